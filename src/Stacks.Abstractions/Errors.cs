@@ -133,6 +133,18 @@ public sealed class StackIOException(string where, string what, string remedy, E
     public override int ExitCode => ExitCodes.InputOutput;
 }
 
+/// <summary>A plugin failed in a way it does not declare; the cause is kept for <c>--verbose</c>.</summary>
+/// <param name="where">File and frame, and the step.</param>
+/// <param name="what">What the plugin did.</param>
+/// <param name="remedy">What the user can do.</param>
+/// <param name="cause">The plugin's own exception.</param>
+public sealed class PluginException(string where, string what, string remedy, Exception? cause = null)
+    : StacksException(where, what, remedy, cause)
+{
+    /// <inheritdoc/>
+    public override int ExitCode => ExitCodes.Internal;
+}
+
 /// <summary>The command line is wrong.</summary>
 /// <param name="where">The argument or option.</param>
 /// <param name="what">What is wrong.</param>

@@ -70,6 +70,12 @@ public sealed record RunPlan
     /// <summary>Replace an output that does not match.</summary>
     public required bool Overwrite { get; init; }
 
+    /// <summary>
+    /// Opens a stack by path through the catalogue, for the recipe's mask and defect images; the run disposes what it
+    /// returns. Null only where the recipe names neither.
+    /// </summary>
+    public Func<string, IStackReader>? OpenStack { get; init; }
+
     /// <summary>The frame's layout with the recipe's mosaic and saturation applied.</summary>
     public FrameLayout LayoutOf(int frame)
     {

@@ -1,0 +1,73 @@
+using System.Collections.Concurrent;
+using Stacks.Abstractions;
+using Stacks.Imaging;
+
+namespace Stacks.Pipeline;
+
+/// <summary>The memory that one frame in flight takes, and what is known of that frame. Used again for later frames.</summary>
+internal sealed class FrameSlot
+{
+    /// <summary>Index of the frame.</summary>
+    public int Frame { get; set; }
+
+    /// <summary>Bytes as they stand in the source.</summary>
+    public ByteBuffer Raw { get; } = new();
+
+    /// <summary>Stored samples of the source; patched in place when only selective steps apply.</summary>
+    public ByteBuffer Stored { get; } = new();
+
+    /// <summary>Stored samples of the result, where they are not the source's patched.</summary>
+    public ByteBuffer Result { get; } = new();
+
+    /// <summary>The frame.</summary>
+    public FramePlanes Whole { get; } = new();
+
+    /// <summary>One sub-lattice of it.</summary>
+    public FramePlanes Part { get; } = new();
+
+    /// <summary>Scratch for steps and measurements.</summary>
+    public Scratch Scratch { get; } = new();
+
+    /// <summary>Bytes as they stand in the result.</summary>
+    public EncodedFrame Encoded { get; } = new();
+
+    /// <summary>What the processor found out about the frame.</summary>
+    public FrameAccount? Account { get; set; }
+}
+
+/// <summary>What the sink is told about a frame besides its bytes.</summary>
+/// <param name="Row">The ledger's row.</param>
+/// <param name="Prepared">The steps that were applied.</param>
+/// <param name="Noise">The noise model used; null for none.</param>
+internal sealed record FrameAccount(LedgerRow Row, PreparedFrame Prepared, FrameNoise? Noise);
+
+/// <summary>At most a given number of slots. The one returned last is lent first: its memory is warm.</summary>
+internal sealed class SlotPool(int capacity) : IDisposable
+{
+    private readonly SemaphoreSlim places = new(capacity);
+    private readonly ConcurrentStack<FrameSlot> free = new();
+    private int made;
+
+    /// <summary>Slots made so far.</summary>
+    public int Made => made;
+
+    /// <summary>Waits for a slot.</summary>
+    public async Task<FrameSlot> LendAsync(CancellationToken cancellation)
+    {
+        await places.WaitAsync(cancellation).ConfigureAwait(false);
+        if (free.TryPop(out FrameSlot? slot))
+            return slot;
+        Interlocked.Increment(ref made);
+        return new FrameSlot();
+    }
+
+    /// <summary>Takes a slot back.</summary>
+    public void Return(FrameSlot slot)
+    {
+        slot.Account = null;
+        free.Push(slot);
+        places.Release();
+    }
+
+    public void Dispose() => places.Dispose();
+}

@@ -1,0 +1,123 @@
+using System.Globalization;
+using System.Reflection;
+using Stacks.Abstractions;
+using Stacks.Imaging;
+
+namespace Stacks.Pipeline;
+
+/// <summary>The run of one stack: from a plan to files under their final names, or to none.</summary>
+public static class StackRun
+{
+    /// <summary>Runs a plan.</summary>
+    /// <param name="plan">Everything resolved; its reader stays open.</param>
+    /// <param name="progress">Told after every frame written; may be null.</param>
+    /// <param name="cancellation">Stops the run; partial files are removed.</param>
+    /// <returns>What was made, or that it was there already.</returns>
+    /// <exception cref="StacksException">Bad input, an output in the way, a failing disk, a failing plugin.</exception>
+    /// <exception cref="OperationCanceledException">The token was cancelled.</exception>
+    public static RunResult Execute(RunPlan plan, IProgress<RunProgress>? progress, CancellationToken cancellation) =>
+        Execute(plan, progress, Durable.Sync, cancellation);
+
+    /// <summary>The same with another way to sync a path, for tests of failing disks.</summary>
+    internal static RunResult Execute(RunPlan plan, IProgress<RunProgress>? progress, Action<string> sync, CancellationToken cancellation)
+    {
+        using CancellationTokenSource ended = CancellationTokenSource.CreateLinkedTokenSource(cancellation);
+        Task<string> sourceDigest = Task.Run(() => Digests.OfFile(plan.Reader.Path, ended.Token), ended.Token);
+        try
+        {
+            FrameMasks masks = FrameMasks.Load(plan);
+            string WorkDigest() => Digests.OfWork(plan, Software.Version, sourceDigest.GetAwaiter().GetResult(), masks.Files);
+            if (OutputFiles.IsDone(plan, WorkDigest, cancellation))
+                return new RunResult(RunOutcome.AlreadyDone, null, [plan.OutputPath], []);
+            return Make(plan, masks, sourceDigest, WorkDigest, progress, sync, cancellation);
+        }
+        finally
+        {
+            ended.Cancel();
+        }
+    }
+
+    private static RunResult Make(
+        RunPlan plan,
+        FrameMasks masks,
+        Task<string> sourceDigest,
+        Func<string> workDigest,
+        IProgress<RunProgress>? progress,
+        Action<string> sync,
+        CancellationToken cancellation)
+    {
+        DateTimeOffset created = Software.Now();
+        RunAccount account = new(plan);
+        List<OutputFile> files = [new(OutputFiles.PartialOf(OutputFiles.SidecarOf(plan.OutputPath)), OutputFiles.SidecarOf(plan.OutputPath))];
+        try
+        {
+            using (IStackWriter writer = plan.OutputFormat.Create(new WriteRequest
+            {
+                Source = plan.Reader,
+                Path = plan.OutputPath,
+                SampleTypeOf = frame => plan.OutputTypeOf(plan.LayoutOf(frame)),
+                Mask = plan.WriteMask,
+                Compress = plan.Recipe.Output.Compress,
+                Created = created,
+            }))
+            {
+                files.AddRange(writer.Files.Skip(1));
+                files.Add(writer.Files[0]);
+                OutputFiles.RefuseOthers(plan, writer.Files.Skip(1).Select(f => f.Final));
+                RunFrames(plan, masks, writer, account, progress, cancellation);
+                account.Finish(sourceDigest.GetAwaiter().GetResult(), workDigest(), created);
+                writer.Complete(account.Provenance, account.Ledger);
+            }
+
+            Sidecar.Write(files[0].Partial, account.Provenance, plan, masks.Files, files.Skip(1), cancellation);
+            cancellation.ThrowIfCancellationRequested();
+            OutputFiles.Commit(files, plan.Overwrite, sync);
+        }
+        catch
+        {
+            OutputFiles.Abandon(files);
+            throw;
+        }
+
+        return new RunResult(
+            RunOutcome.Made, account.Provenance, [.. files.Skip(1).Reverse().Select(f => f.Final), files[0].Final], account.Warnings);
+    }
+
+    private static void RunFrames(
+        RunPlan plan, FrameMasks masks, IStackWriter writer, RunAccount account, IProgress<RunProgress>? progress, CancellationToken cancellation)
+    {
+        int frames = plan.Reader.FrameCount;
+        IRowBands bands = frames < plan.Workers ? new ParallelBands((plan.Workers + frames - 1) / frames) : SerialBands.Instance;
+        FrameProcessor processor = new(plan, new PreparedSteps(plan), masks, new NoiseModels(plan), writer, bands, cancellation);
+        using FrameGraph graph = new(plan.Reader, writer, plan.Workers, plan.FramesInFlight);
+        graph.Run(
+            processor.Process,
+            slot =>
+            {
+                account.Add(slot.Account!);
+                progress?.Report(new RunProgress(slot.Frame + 1, frames));
+            },
+            cancellation);
+    }
+}
+
+/// <summary>The program's name, version and clock, as provenance names them.</summary>
+internal static class Software
+{
+    /// <summary>Name of the program.</summary>
+    public const string Name = "stacks";
+
+    /// <summary>Version of the program.</summary>
+    public static string Version { get; } =
+        typeof(Software).Assembly.GetCustomAttribute<AssemblyInformationalVersionAttribute>()?.InformationalVersion ?? "0";
+
+    /// <summary>SOURCE_DATE_EPOCH (reproducible-builds.org: seconds since 1970, UTC) where it is set, else now; whole seconds.</summary>
+    public static DateTimeOffset Now()
+    {
+        string? epoch = Environment.GetEnvironmentVariable("SOURCE_DATE_EPOCH");
+        return DateTimeOffset.FromUnixTimeSeconds(
+            long.TryParse(epoch, NumberStyles.None, CultureInfo.InvariantCulture, out long seconds) && seconds <= 253402300799
+                ? seconds
+                : DateTimeOffset.UtcNow.ToUnixTimeSeconds());
+    }
+}
