@@ -3,11 +3,12 @@ using System.Runtime.ExceptionServices;
 using System.Runtime.InteropServices;
 using System.Security.Cryptography;
 using Stacks.Abstractions;
+using Stacks.Noise;
 
 namespace Stacks.Pipeline;
 
 /// <summary>
-/// The way of one frame through a worker: decode, digest, flags, values, filter, result, account, encode.
+/// The way of one frame through a worker: decode, flags, values and noise, filter, result, account, encode.
 /// Safe for concurrent use; all memory is the slot's.
 /// </summary>
 internal sealed class FrameProcessor(
@@ -38,21 +39,28 @@ internal sealed class FrameProcessor(
 
         // Values and their noise.
         frame.Start(layout.WorkType).Load(source, stored, layout.Transform);
-        FrameNoise? noise = noiseModels.For(slot.Frame, layout, frame, slot.Scratch);
+        double level = frame.Current.Median(flags, slot.Scratch);
+        FrameNoise? noise = noiseModels.For(slot.Frame, layout);
+        NoiseMeasurement before = frame.Current.MeasureNoise(
+            frame.Flags, layout.Lattice, layout.QuantisationStep, noise?.Model, slot.Scratch);
+        slot.Scratch.Reset();
+        if (noise is { IsMeasured: true })
+            noise = noise with { Model = NoiseModels.Measured(before.Sigma) };
+        if (noise is null && prepared.NeedsNoise)
+            throw NoNoise(slot.Frame, layout, prepared);
 
         // Filter: the frame, or its sub-lattices one after the other.
         if (layout.Lattice.IsSingle)
             Filter(slot, frame, prepared.Parts[0], noise?.Model);
         else
             FilterMosaic(slot, frame, prepared, noise?.Model);
-        cancellation.ThrowIfCancellationRequested();
 
         // Result: the source's samples with the replaced ones patched, or new samples from the values.
         StoredSamples target = StoredSamples.Of(prepared.OutputType);
         bool sameType = prepared.OutputType == layout.SampleType;
         ValueTransform transform = sameType ? layout.Transform : ValueTransform.Identity;
-        bool held;
         bool changed = prepared.IsRewritten || FlagScan.Any(flags, SampleFlags.Replaced);
+        bool held;
         Span<byte> result = stored;
         if (!prepared.IsRewritten)
         {
@@ -70,14 +78,19 @@ internal sealed class FrameProcessor(
 
         // Account.
         SampleSum fluxOut = changed ? target.Sum(result, flags, layout.Width) : fluxIn;
+        double step = prepared.IsRewritten && frame.Current.Type >= WorkType.Float32 ? 0 : layout.QuantisationStep;
+        NoiseMeasurement after = changed
+            ? frame.Current.MeasureNoise(frame.Flags, layout.Lattice, step, null, slot.Scratch)
+            : before;
+        slot.Scratch.Reset();
         LedgerRow row = new()
         {
             Frame = slot.Frame,
             SourceDigest = sourceDigest,
             ResultDigest = changed ? SHA256.HashData(result) : sourceDigest,
-            Level = double.NaN,
-            NoiseBefore = double.NaN,
-            NoiseAfter = double.NaN,
+            Level = level,
+            NoiseBefore = before.Sigma,
+            NoiseAfter = after.Sigma,
             ReplacedBright = FlagScan.Count(flags, SampleFlags.ReplacedBright),
             ReplacedDark = FlagScan.Count(flags, SampleFlags.ReplacedDark),
             KeptAsSource = FlagScan.Count(flags, SampleFlags.KeptAsSource),
@@ -86,11 +99,13 @@ internal sealed class FrameProcessor(
             FluxIn = fluxIn.Value(layout.Transform),
             FluxRemoved = sameType ? fluxIn.Less(fluxOut, transform) : fluxIn.Value(layout.Transform) - fluxOut.Value(transform),
             FluxOut = fluxOut.Value(transform),
-            Flags = held ? LedgerFlags.OutOfRange : LedgerFlags.None,
+            Flags = (ModelCheck.Disagrees(before.Ratio) ? LedgerFlags.NoiseDisagrees : LedgerFlags.None)
+                | (double.IsNaN(before.Sigma) || noise is { Model: null } ? LedgerFlags.NoiseNotMeasurable : LedgerFlags.None)
+                | (held ? LedgerFlags.OutOfRange : LedgerFlags.None),
         };
-        slot.Account = new FrameAccount(row, prepared, noise);
+        slot.Account = new FrameAccount(row, prepared, noise, before.Ratio, slot.Figures);
 
-        // Encode.
+        // Encode. The writer may overwrite the samples: nothing may read them after this.
         writer.Encode(slot.Frame, result, MemoryMarshal.AsBytes(flags), slot.Encoded);
     }
 
@@ -100,18 +115,21 @@ internal sealed class FrameProcessor(
         WorkPlane source = frame.Current;
         foreach (PreparedPart part in prepared.Parts)
         {
-            FramePlanes planes = slot.Part;
-            planes.Split(frame, source, lattice, part.OffsetX, part.OffsetY);
-            Filter(slot, planes, part, noise?.Sublattice(lattice, part.OffsetX, part.OffsetY));
-            planes.Join(frame, lattice, part.OffsetX, part.OffsetY);
+            slot.Part.Split(frame, source, lattice, part.OffsetX, part.OffsetY);
+            Filter(slot, slot.Part, part, noise?.Sublattice(lattice, part.OffsetX, part.OffsetY));
+            slot.Part.Join(frame, lattice, part.OffsetX, part.OffsetY);
         }
     }
 
+    /// <summary>Runs the steps; those that need a noise model leave a frame without measurable noise as it is.</summary>
     private void Filter(FrameSlot slot, FramePlanes planes, PreparedPart part, NoiseModel? noise)
     {
         foreach (PreparedStep step in part.Steps)
         {
             cancellation.ThrowIfCancellationRequested();
+            planes.Convert(step.Type);
+            if (step.NeedsNoise && noise is null)
+                continue;
             FrameContext context = new()
             {
                 FrameIndex = slot.Frame,
@@ -120,9 +138,9 @@ internal sealed class FrameProcessor(
                 HasSaturated = FlagScan.Any(planes.Flags.Samples, SampleFlags.Saturated),
                 Bands = bands,
                 Scratch = slot.Scratch,
+                Report = (name, value) => (slot.Figures ??= []).Add(new StepFigure(step.Number, name, value)),
                 Cancellation = cancellation,
             };
-            planes.Convert(step.Type);
             try
             {
                 planes.Current.Apply(step.Step, step.Kind, planes.Flags, context);
@@ -142,11 +160,18 @@ internal sealed class FrameProcessor(
         planes.MergeHistory();
     }
 
-    private PluginException PluginFault(int frame, PreparedStep step, Exception fault)
+    private PluginException PluginFault(int frame, PreparedStep step, Exception fault) => new(
+        string.Create(CultureInfo.InvariantCulture, $"{plan.Reader.Path}, frame {frame}, step {step.Number} ({step.Planned.Section.Filter})"),
+        $"the filter failed: {fault.Message.ReplaceLineEndings(" ")}",
+        "report it to the author of the plugin; --verbose shows where",
+        fault);
+
+    private static RecipeException NoNoise(int frame, FrameLayout layout, PreparedFrame prepared)
     {
-        string where = string.Create(
-            CultureInfo.InvariantCulture, $"{plan.Reader.Path}, frame {frame}, step {step.Number} ({step.Planned.Section.Filter})");
-        return new PluginException(
-            where, $"the filter failed: {fault.Message.ReplaceLineEndings(" ")}", "report it to the author of the plugin; --verbose shows where", fault);
+        StepSection section = prepared.Parts[0].Steps.First(s => s.NeedsNoise).Planned.Section;
+        return new RecipeException(
+            section.Place.ToString(),
+            string.Create(CultureInfo.InvariantCulture, $"{section.Filter} needs a noise model, and none is given for frame {frame} (channel {layout.Channel ?? 0})"),
+            "add a [noise] table; from = \"frame\" measures it");
     }
 }

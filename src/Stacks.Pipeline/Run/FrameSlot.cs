@@ -31,6 +31,9 @@ internal sealed class FrameSlot
     /// <summary>Bytes as they stand in the result.</summary>
     public EncodedFrame Encoded { get; } = new();
 
+    /// <summary>What steps measured on the frame; null when nothing.</summary>
+    public List<StepFigure>? Figures { get; set; }
+
     /// <summary>What the processor found out about the frame.</summary>
     public FrameAccount? Account { get; set; }
 }
@@ -39,7 +42,16 @@ internal sealed class FrameSlot
 /// <param name="Row">The ledger's row.</param>
 /// <param name="Prepared">The steps that were applied.</param>
 /// <param name="Noise">The noise model used; null for none.</param>
-internal sealed record FrameAccount(LedgerRow Row, PreparedFrame Prepared, FrameNoise? Noise);
+/// <param name="NoiseRatio">Measured noise over the model's; NaN when not compared.</param>
+/// <param name="Figures">What steps measured on the frame; null when nothing.</param>
+internal sealed record FrameAccount(
+    LedgerRow Row, PreparedFrame Prepared, FrameNoise? Noise, double NoiseRatio, IReadOnlyList<StepFigure>? Figures);
+
+/// <summary>A figure that a step measured on a frame.</summary>
+/// <param name="Step">Number of the step, from 1.</param>
+/// <param name="Name">What it is.</param>
+/// <param name="Value">The figure.</param>
+internal sealed record StepFigure(int Step, string Name, double Value);
 
 /// <summary>At most a given number of slots. The one returned last is lent first: its memory is warm.</summary>
 internal sealed class SlotPool(int capacity) : IDisposable
@@ -65,6 +77,7 @@ internal sealed class SlotPool(int capacity) : IDisposable
     public void Return(FrameSlot slot)
     {
         slot.Account = null;
+        slot.Figures = null;
         free.Push(slot);
         places.Release();
     }

@@ -29,6 +29,9 @@ internal sealed record PreparedPart(int OffsetX, int OffsetY, IReadOnlyList<Prep
 /// <param name="Parts">One, or the sub-lattices of a mosaic.</param>
 internal sealed record PreparedFrame(FrameLayout Layout, SampleType OutputType, IReadOnlyList<PreparedPart> Parts)
 {
+    /// <summary>True when a smoothing step applies.</summary>
+    public bool IsSmoothed { get; } = Parts[0].Steps.Any(s => s.Kind == FilterKind.Smoothing);
+
     /// <summary>True when the result is a plane of new values, not the source with some samples replaced.</summary>
     public bool IsRewritten { get; } =
         OutputType != Layout.SampleType || Parts[0].Steps.Any(s => s.Kind == FilterKind.Smoothing);

@@ -1,3 +1,4 @@
+using System.Globalization;
 using Stacks.Abstractions;
 
 namespace Stacks.Pipeline;
@@ -7,15 +8,15 @@ internal sealed class RunAccount(RunPlan plan)
 {
     private readonly List<LedgerRow> ledger = [];
     private readonly List<PreparedFrame> kinds = [];
-    private readonly List<string> noiseLines = [];
-    private readonly List<string> warnings = [];
+    private readonly NoiseAccount noise = new();
+    private readonly SortedDictionary<(int Step, string Name), (double Least, double Most)> figures = [];
     private ProvenanceRecord? provenance;
 
     /// <summary>A row per frame.</summary>
     public IReadOnlyList<LedgerRow> Ledger => ledger;
 
-    /// <summary>Sentences for the user.</summary>
-    public IReadOnlyList<string> Warnings => warnings;
+    /// <summary>Sentences for the user, after <see cref="Finish"/>.</summary>
+    public IReadOnlyList<string> Warnings { get; private set; } = [];
 
     /// <summary>The record, after <see cref="Finish"/>.</summary>
     public ProvenanceRecord Provenance => provenance ?? throw new InvalidOperationException("the run has not ended");
@@ -24,58 +25,96 @@ internal sealed class RunAccount(RunPlan plan)
     public void Add(FrameAccount frame)
     {
         ledger.Add(frame.Row);
+        noise.Add(frame);
         if (!kinds.Contains(frame.Prepared))
             kinds.Add(frame.Prepared);
-        if (frame.Noise is { } noise)
+        foreach (StepFigure figure in frame.Figures ?? [])
         {
-            string line = $"{noise.Origin}: {noise.Model.Describe()}";
-            if (!noiseLines.Contains(line))
-                noiseLines.Add(line);
+            (int, string) key = (figure.Step, figure.Name);
+            (double least, double most) = figures.GetValueOrDefault(key, (figure.Value, figure.Value));
+            figures[key] = (Math.Min(least, figure.Value), Math.Max(most, figure.Value));
         }
     }
 
     /// <summary>Makes the record.</summary>
-    public void Finish(string sourceDigest, string workDigest, DateTimeOffset created) => provenance = new ProvenanceRecord
+    public void Finish(string sourceDigest, string workDigest, DateTimeOffset created)
     {
-        Program = Software.Name,
-        Version = Software.Version,
-        Created = created,
-        RecipeTitle = plan.Recipe.Title,
-        RecipeDigest = plan.RecipeDigest,
-        WorkDigest = workDigest,
-        SourceName = Path.GetFileName(plan.Reader.Path),
-        SourceDigest = sourceDigest,
-        Steps = [.. plan.Steps.Select((planned, i) => Step(planned, i + 1))],
-        Noise = noiseLines,
-        Totals = new RunTotals(
-            ledger.Count,
-            ledger.Sum(r => r.ReplacedBright),
-            ledger.Sum(r => r.ReplacedDark),
-            ledger.Sum(r => r.KeptAsSource),
-            ledger.Sum(r => r.Saturated),
-            ledger.Sum(r => r.Missing),
-            ledger.Sum(r => r.FluxIn),
-            ledger.Sum(r => r.FluxRemoved),
-            ledger.Sum(r => r.FluxOut)),
-        Remarks = [.. warnings],
-    };
+        Warnings = [.. noise.Warnings(ledger.Count), .. FrameWarnings(), .. StepWarnings()];
+        provenance = new ProvenanceRecord
+        {
+            Program = Software.Name,
+            Version = Software.Version,
+            Created = created,
+            RecipeTitle = plan.Recipe.Title,
+            RecipeDigest = plan.RecipeDigest,
+            WorkDigest = workDigest,
+            SourceName = Path.GetFileName(plan.Reader.Path),
+            SourceDigest = sourceDigest,
+            Steps = [.. plan.Steps.Select((planned, i) => Step(planned, i + 1))],
+            Noise = noise.Lines(),
+            Totals = new RunTotals(
+                ledger.Count,
+                ledger.Sum(r => r.ReplacedBright),
+                ledger.Sum(r => r.ReplacedDark),
+                ledger.Sum(r => r.KeptAsSource),
+                ledger.Sum(r => r.Saturated),
+                ledger.Sum(r => r.Missing),
+                ledger.Sum(r => r.FluxIn),
+                ledger.Sum(r => r.FluxRemoved),
+                ledger.Sum(r => r.FluxOut)),
+            Remarks = [.. SmoothingRemarks(), .. Warnings],
+        };
+    }
 
     /// <summary>A step as it took effect; a parameter that resolved differently for different frames shows each value.</summary>
     private ProvenanceStep Step(PlannedStep planned, int number)
     {
-        IEnumerable<ResolvedParameter> resolved = kinds
-            .SelectMany(k => k.Parts)
-            .SelectMany(p => p.Steps)
-            .Where(s => s.Number == number)
-            .SelectMany(s => s.Step.Resolved);
+        IEnumerable<ResolvedParameter> resolved = Applied(number)
+            .SelectMany(s => s.Step.Resolved)
+            .GroupBy(r => (r.Name, r.Unit))
+            .Select(g => new ResolvedParameter(g.Key.Name, string.Join(" | ", g.Select(r => r.Value).Distinct()), g.Key.Unit));
+        IEnumerable<ResolvedParameter> measured = figures
+            .Where(f => f.Key.Step == number)
+            .Select(f => new ResolvedParameter(
+                f.Key.Name + " on the frames",
+                string.Create(CultureInfo.InvariantCulture, $"{f.Value.Least:G6} to {f.Value.Most:G6}"),
+                planned.Filter.Plugin.Parameters.FirstOrDefault(p => p.Name == f.Key.Name)?.Unit ?? ""));
         PluginOrigin origin = planned.Filter.Origin;
         return new ProvenanceStep(
-            planned.Section.Filter,
-            origin.Assembly,
-            origin.Version,
-            origin.Digest,
-            planned.Section.Channel,
-            [.. resolved.GroupBy(r => (r.Name, r.Unit)).Select(g => new ResolvedParameter(
-                g.Key.Name, string.Join(" | ", g.Select(r => r.Value).Distinct()), g.Key.Unit))]);
+            planned.Section.Filter, origin.Assembly, origin.Version, origin.Digest, planned.Section.Channel, [.. resolved, .. measured]);
+    }
+
+    private IEnumerable<PreparedStep> Applied(int number) =>
+        kinds.SelectMany(k => k.Parts).SelectMany(p => p.Steps).Where(s => s.Number == number);
+
+    private IEnumerable<string> FrameWarnings()
+    {
+        LedgerRow[] held = [.. ledger.Where(r => r.Flags.HasFlag(LedgerFlags.OutOfRange))];
+        if (held.Length > 0)
+        {
+            yield return string.Create(
+                CultureInfo.InvariantCulture,
+                $"frame {held[0].Frame}: results beyond the output type's range were held at its end (so in {held.Length} of {ledger.Count} frames); write float32 or float64 samples");
+        }
+    }
+
+    private IEnumerable<string> StepWarnings()
+    {
+        for (int i = 0; i < plan.Steps.Count; i++)
+        {
+            if (!Applied(i + 1).Any())
+                yield return string.Create(CultureInfo.InvariantCulture, $"step {i + 1} ({plan.Steps[i].Section.Filter}): no frame is of its channel {plan.Steps[i].Section.Channel}");
+        }
+
+        if (plan.Recipe.Input.Defects is not null && !plan.Steps.Any(s => s.Filter.Plugin.Kind == FilterKind.Selective))
+            yield return "defects are given, but no step is selective: none is replaced";
+    }
+
+    private IEnumerable<string> SmoothingRemarks()
+    {
+        if (!kinds.Any(k => k.IsSmoothed))
+            yield break;
+        yield return "Smoothed: gain and read noise of the header no longer give the errors of single pixels, and neighbours are correlated.";
+        yield return "Smoothing moves flux inside its kernel: sums over sources change, also where the frame's total is kept.";
     }
 }

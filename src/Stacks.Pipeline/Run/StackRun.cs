@@ -25,7 +25,7 @@ public static class StackRun
         Task<string> sourceDigest = Task.Run(() => Digests.OfFile(plan.Reader.Path, ended.Token), ended.Token);
         try
         {
-            FrameMasks masks = FrameMasks.Load(plan);
+            FrameMasks masks = new(plan, cancellation);
             string WorkDigest() => Digests.OfWork(plan, Software.Version, sourceDigest.GetAwaiter().GetResult(), masks.Files);
             if (OutputFiles.IsDone(plan, WorkDigest, cancellation))
                 return new RunResult(RunOutcome.AlreadyDone, null, [plan.OutputPath], []);
@@ -48,40 +48,42 @@ public static class StackRun
     {
         DateTimeOffset created = Software.Now();
         RunAccount account = new(plan);
-        List<OutputFile> files = [new(OutputFiles.PartialOf(OutputFiles.SidecarOf(plan.OutputPath)), OutputFiles.SidecarOf(plan.OutputPath))];
+        OutputFile sidecar = new(OutputFiles.PartialOf(OutputFiles.SidecarOf(plan.OutputPath)), OutputFiles.SidecarOf(plan.OutputPath));
+        IReadOnlyList<OutputFile> written = [];
         try
         {
-            using (IStackWriter writer = plan.OutputFormat.Create(new WriteRequest
+            using (IStackWriter writer = plan.OutputFormat.Create(RequestOf(plan, created)))
             {
-                Source = plan.Reader,
-                Path = plan.OutputPath,
-                SampleTypeOf = frame => plan.OutputTypeOf(plan.LayoutOf(frame)),
-                Mask = plan.WriteMask,
-                Compress = plan.Recipe.Output.Compress,
-                Created = created,
-            }))
-            {
-                files.AddRange(writer.Files.Skip(1));
-                files.Add(writer.Files[0]);
-                OutputFiles.RefuseOthers(plan, writer.Files.Skip(1).Select(f => f.Final));
+                written = writer.Files;
+                OutputFiles.RefuseOthers(plan, written.Skip(1).Select(f => f.Final));
                 RunFrames(plan, masks, writer, account, progress, cancellation);
                 account.Finish(sourceDigest.GetAwaiter().GetResult(), workDigest(), created);
                 writer.Complete(account.Provenance, account.Ledger);
             }
 
-            Sidecar.Write(files[0].Partial, account.Provenance, plan, masks.Files, files.Skip(1), cancellation);
+            NamedDigest[] made = [.. written.Select(f => new NamedDigest(Path.GetFileName(f.Final), Digests.OfFile(f.Partial, cancellation)))];
+            Sidecar.Write(sidecar.Partial, account.Provenance, plan, masks.Files, made);
             cancellation.ThrowIfCancellationRequested();
-            OutputFiles.Commit(files, plan.Overwrite, sync);
+            OutputFiles.Commit([sidecar, .. written.Reverse()], plan.Overwrite, sync);
         }
         catch
         {
-            OutputFiles.Abandon(files);
+            OutputFiles.Abandon([sidecar, .. written]);
             throw;
         }
 
-        return new RunResult(
-            RunOutcome.Made, account.Provenance, [.. files.Skip(1).Reverse().Select(f => f.Final), files[0].Final], account.Warnings);
+        return new RunResult(RunOutcome.Made, account.Provenance, [.. written.Select(f => f.Final), sidecar.Final], account.Warnings);
     }
+
+    private static WriteRequest RequestOf(RunPlan plan, DateTimeOffset created) => new()
+    {
+        Source = plan.Reader,
+        Path = plan.OutputPath,
+        SampleTypeOf = frame => plan.OutputTypeOf(plan.LayoutOf(frame)),
+        Mask = plan.WriteMask,
+        Compress = plan.Recipe.Output.Compress,
+        Created = created,
+    };
 
     private static void RunFrames(
         RunPlan plan, FrameMasks masks, IStackWriter writer, RunAccount account, IProgress<RunProgress>? progress, CancellationToken cancellation)

@@ -1,5 +1,6 @@
 using System.Numerics;
 using Stacks.Abstractions;
+using Stacks.Noise;
 
 namespace Stacks.Pipeline;
 
@@ -38,6 +39,13 @@ internal abstract class WorkPlane
 
     /// <summary>Runs a step; the values are then its result. Selective: those at pixels it flagged Replaced alone.</summary>
     public abstract void Apply(IFilterStep step, FilterKind kind, Plane<SampleFlags> flags, FrameContext context);
+
+    /// <summary>See <see cref="RankSelection.Median"/>; missing samples do not count.</summary>
+    public abstract double Median(ReadOnlySpan<SampleFlags> flags, IScratch scratch);
+
+    /// <summary>See <see cref="DifferenceNoise.Measure"/>.</summary>
+    public abstract NoiseMeasurement MeasureNoise(
+        Plane<SampleFlags> flags, Lattice lattice, double quantisationStep, NoiseModel? model, IScratch scratch);
 
     /// <summary>Takes every period-th value of a plane of the same type, from an offset on.</summary>
     public abstract void Split(WorkPlane whole, Lattice lattice, int offsetX, int offsetY);
@@ -122,6 +130,13 @@ internal sealed class WorkPlane<T>(WorkType type) : WorkPlane
                 kept[i] = other[i];
         }
     }
+
+    public override double Median(ReadOnlySpan<SampleFlags> flags, IScratch scratch) => RankSelection.Median<T>(
+        Values.Samples, flags, SampleFlags.Missing, scratch.Rent<int>(RankSelection.Counts, 1).Samples);
+
+    public override NoiseMeasurement MeasureNoise(
+        Plane<SampleFlags> flags, Lattice lattice, double quantisationStep, NoiseModel? model, IScratch scratch) =>
+        DifferenceNoise.Measure(Values, flags, lattice, quantisationStep, model, scratch);
 
     public override void Split(WorkPlane whole, Lattice lattice, int offsetX, int offsetY) =>
         Mosaic.Split(((WorkPlane<T>)whole).Values, lattice, offsetX, offsetY, Values);
