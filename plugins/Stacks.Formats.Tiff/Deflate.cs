@@ -1,0 +1,71 @@
+using System.Globalization;
+using System.IO.Compression;
+using Stacks.Abstractions;
+
+namespace Stacks.Formats.Tiff;
+
+/// <summary>Deflate in the zlib format (RFC 1950, RFC 1951), as compression schemes 8 and 32946 use it.</summary>
+internal static class Deflate
+{
+    /// <summary>
+    /// Decodes until the output is full, and checks the data's own checksum where they end there. The stream object of
+    /// the base library cannot be used twice: one is made for each segment.
+    /// </summary>
+    /// <returns>Null, or what is wrong with the data.</returns>
+    public static unsafe string? Decode(ReadOnlySpan<byte> source, Span<byte> output)
+    {
+        fixed (byte* start = source)
+        {
+            using UnmanagedMemoryStream stream = new(start, source.Length);
+            using ZLibStream inflater = new(stream, CompressionMode.Decompress);
+            try
+            {
+                int done = inflater.ReadAtLeast(output, output.Length, throwOnEndOfStream: false);
+                if (done < output.Length)
+                    return string.Create(CultureInfo.InvariantCulture, $"the Deflate data end after {done} of {output.Length} bytes");
+                inflater.ReadByte();
+                return null;
+            }
+            catch (InvalidDataException)
+            {
+                return "the Deflate data are damaged";
+            }
+        }
+    }
+
+    /// <summary>Appends the compressed form of some bytes.</summary>
+    public static void Encode(ReadOnlySpan<byte> source, ByteBuffer output)
+    {
+        using BufferStream stream = new(output);
+        using ZLibStream deflater = new(stream, CompressionLevel.Optimal);
+        deflater.Write(source);
+    }
+
+    /// <summary>A stream that appends to a buffer.</summary>
+    private sealed class BufferStream(ByteBuffer buffer) : Stream
+    {
+        public override bool CanRead => false;
+
+        public override bool CanSeek => false;
+
+        public override bool CanWrite => true;
+
+        public override long Length => buffer.Length;
+
+        public override long Position { get => buffer.Length; set => throw new NotSupportedException(); }
+
+        public override void Write(byte[] bytes, int offset, int count) => buffer.Append(bytes.AsSpan(offset, count));
+
+        public override void Write(ReadOnlySpan<byte> bytes) => buffer.Append(bytes);
+
+        public override void Flush()
+        {
+        }
+
+        public override int Read(byte[] bytes, int offset, int count) => throw new NotSupportedException();
+
+        public override long Seek(long offset, SeekOrigin origin) => throw new NotSupportedException();
+
+        public override void SetLength(long value) => throw new NotSupportedException();
+    }
+}

@@ -1,0 +1,135 @@
+using System.Globalization;
+using Stacks.Abstractions;
+
+namespace Stacks.Formats.Tiff;
+
+/// <summary>One page of the file.</summary>
+/// <param name="Directory">Offset of its directory.</param>
+/// <param name="Layout">What it shares with pages that are alike.</param>
+/// <param name="OffsetsAt">Where the offsets of its segments stand.</param>
+/// <param name="CountsAt">Where their byte counts stand; -1 where there are none.</param>
+internal readonly record struct Page(long Directory, PageLayout Layout, long OffsetsAt, long CountsAt);
+
+/// <summary>
+/// The pages of a file, found in one walk over the chain of directories. Only offsets are kept: 32 bytes a page. The
+/// walk ends on hostile chains too: no directory is visited twice, and directories and segment tables together may not
+/// be longer than four times the file.
+/// </summary>
+internal sealed class PageIndex
+{
+    private const string CopyAgain = "copy it again from its source";
+    private readonly List<Page> pages = [];
+    private readonly Dictionary<PageLayout, PageLayout> layouts = [];
+    private readonly TiffFile file;
+    private readonly FileWindow window;
+    private readonly SegmentTable table;
+    private long budget;
+
+    private PageIndex(TiffFile file)
+    {
+        this.file = file;
+        window = new FileWindow(file);
+        table = new SegmentTable(file, window);
+        budget = 4 * file.Length;
+    }
+
+    /// <summary>The pages, in the order of the chain.</summary>
+    public IReadOnlyList<Page> Pages => pages;
+
+    /// <summary>What is lost of a truncated file; null when it is whole.</summary>
+    public string? Loss { get; private set; }
+
+    /// <summary>Bytes of image data of all pages.</summary>
+    public long ImageBytes { get; private set; }
+
+    /// <summary>Tags of science pages that a result cannot carry: their type is unknown, or they point to directories below the page.</summary>
+    public SortedSet<ushort> TagsNotCarried { get; } = [];
+
+    /// <summary>Walks over the file.</summary>
+    /// <param name="file">The file.</param>
+    /// <param name="allowTruncated">True to stop before the first page that is not whole, instead of failing.</param>
+    /// <exception cref="StackFormatException">Broken, hostile, truncated, or of a kind that is refused by name.</exception>
+    public static PageIndex Walk(TiffFile file, bool allowTruncated)
+    {
+        PageIndex index = new(file);
+        try
+        {
+            index.WalkChain();
+        }
+        catch (CutOffException cut)
+        {
+            string where = string.Create(CultureInfo.InvariantCulture, $"{file.Path}, page {index.pages.Count}, byte {cut.Offset}");
+            string what = string.Create(CultureInfo.InvariantCulture, $"{cut.Message} should be here, the file ends at byte {file.Length}");
+            if (!allowTruncated || index.pages.Count == 0)
+                throw new StackFormatException(where, what, CopyAgain, cut);
+            index.Loss = string.Create(CultureInfo.InvariantCulture, $"page {index.pages.Count} and all after it are lost: {what} (byte {cut.Offset})");
+        }
+
+        return index;
+    }
+
+    private void WalkChain()
+    {
+        HashSet<long> seen = [];
+        for (long offset = file.FirstDirectory; offset != 0;)
+        {
+            string where = string.Create(CultureInfo.InvariantCulture, $"{file.Path}, page {pages.Count}");
+            if (!seen.Add(offset))
+                throw new StackFormatException($"{where}, byte {offset}", "the chain of pages leads back to a page before", "copy the file again from its source, or save it anew");
+            TiffDirectory directory = TiffDirectory.Read(file, window, offset, where);
+            Spend(directory.ByteLength, where);
+            TagsNotCarried.UnionWith(directory.Unknown);
+            TagsNotCarried.UnionWith(directory.Fields.Select(f => f.Tag).Where(CarriedFields.PointsBelow));
+            pages.Add(PageOf(directory, offset));
+            offset = directory.Next;
+        }
+
+        if (pages.Count == 0)
+            throw new StackFormatException($"{file.Path}, byte 4", "the file has no pages", CopyAgain);
+    }
+
+    private Page PageOf(TiffDirectory directory, long offset)
+    {
+        PageLayout fresh = new PageRules(directory, window).Layout();
+        if (!layouts.TryGetValue(fresh, out PageLayout? layout))
+            layouts[fresh] = layout = fresh;
+        bool tiled = directory.Find(Tag.TileOffsets) is not null;
+        long offsetsAt = directory.Find(tiled ? Tag.TileOffsets : Tag.StripOffsets)?.ValueAt ?? -1;
+        long countsAt = directory.Find(tiled ? Tag.TileByteCounts : Tag.StripByteCounts)?.ValueAt ?? -1;
+        Page page = new(offset, layout, offsetsAt, countsAt);
+        Spend((long)layout.Segments * (layout.OffsetType.Size() + layout.CountType.Size()), directory.Where);
+        CheckSegments(page, directory.Where);
+        return page;
+    }
+
+    /// <summary>Every segment lies in the file and can hold what the page promises.</summary>
+    private void CheckSegments(in Page page, string where)
+    {
+        table.Load(page);
+        PageLayout layout = page.Layout;
+        long total = 0;
+        for (int i = 0; i < layout.Segments; i++)
+        {
+            (long offset, long count) = table[i];
+            if (!file.Holds(offset, count))
+                throw new CutOffException(offset, string.Create(CultureInfo.InvariantCulture, $"its {layout.Grid.Word} {i} of {count} bytes"));
+            total += count;
+            if (layout.Frame is not null && count < layout.Grid.BytesOf(i) / layout.LargestRatio)
+                throw new StackFormatException(
+                    string.Create(CultureInfo.InvariantCulture, $"{where}, {layout.Grid.Word} {i}, byte {offset}"),
+                    string.Create(CultureInfo.InvariantCulture, $"{count} bytes cannot hold the {layout.Grid.BytesOf(i)} bytes of samples they stand for"),
+                    CopyAgain);
+        }
+
+        if (total > file.Length || total > Array.MaxLength - (4L * layout.Segments))
+            throw new StackFormatException(where, string.Create(CultureInfo.InvariantCulture, $"the page claims {total} bytes of image data"), CopyAgain);
+        ImageBytes += total;
+    }
+
+    private void Spend(long bytes, string where)
+    {
+        budget -= bytes;
+        if (budget < 0)
+            throw new StackFormatException(where, "the directories of the file lie over each other", CopyAgain);
+    }
+}

@@ -1,0 +1,193 @@
+using System.Globalization;
+using Stacks.Abstractions;
+
+namespace Stacks.Formats.Tiff;
+
+/// <summary>
+/// Writes a stack as TIFF. From a TIFF source it keeps byte order, order of pages, thumbnails and every field that does
+/// not say how samples are stored.
+/// </summary>
+internal sealed class TiffWriter : IStackWriter
+{
+    private readonly WriteRequest request;
+    private readonly TiffReader? source;
+    private readonly PageFile stack;
+    private readonly PageFile? mask;
+
+    /// <summary>Creates the files.</summary>
+    /// <exception cref="OutputException">A file cannot be created, or TIFF cannot say what a frame's samples mean.</exception>
+    public TiffWriter(WriteRequest request)
+    {
+        this.request = request;
+        source = request.Source as TiffReader;
+        CheckMeaning();
+        List<OutputFile> files = [new(request.Path + ".partial", request.Path)];
+        if (request.Mask)
+        {
+            string companion = System.IO.Path.ChangeExtension(request.Path, null) + ".changes.tif";
+            files.Add(new OutputFile(companion + ".partial", companion));
+        }
+
+        Files = files;
+        bool bigEndian = source is { File.BigEndian: true };
+        stack = new PageFile(files[0].Partial, bigEndian, source is { File.IsBig: true } || MayPass4GiB(TypeOf), request.Compress);
+        try
+        {
+            if (request.Mask)
+                mask = new PageFile(files[1].Partial, bigEndian, MayPass4GiB(_ => SampleType.UInt8), true);
+        }
+        catch
+        {
+            stack.Dispose();
+            throw;
+        }
+    }
+
+    /// <inheritdoc/>
+    public IReadOnlyList<OutputFile> Files { get; }
+
+    /// <inheritdoc/>
+    public void Encode(int frame, Span<byte> stored, ReadOnlySpan<byte> flags, EncodedFrame encoded)
+    {
+        FrameLayout layout = request.Source.Layout(frame);
+        stack.Encode(layout, TypeOf(frame), stored, encoded.Data);
+        encoded.Mask.Resize(0);
+        if (mask is null)
+            return;
+        Span<byte> copy = stored[..flags.Length];
+        flags.CopyTo(copy);
+        mask.Encode(layout, SampleType.UInt8, copy, encoded.Mask);
+    }
+
+    /// <inheritdoc/>
+    public void Write(int frame, EncodedFrame encoded)
+    {
+        if (frame != stack.Frames)
+            throw new InvalidOperationException($"frame {frame} comes where frame {stack.Frames} is due");
+        FrameLayout layout = request.Source.Layout(frame);
+        stack.Append(layout, TypeOf(frame), encoded.Data.Written);
+        mask?.Append(layout, SampleType.UInt8, encoded.Mask.Written);
+    }
+
+    /// <inheritdoc/>
+    public void Complete(ProvenanceRecord provenance, IReadOnlyList<LedgerRow> ledger)
+    {
+        int frames = request.Source.FrameCount;
+        if (stack.Frames != frames)
+            throw new InvalidOperationException($"{stack.Frames} of {frames} frames were written");
+        List<OutputField> first =
+        [
+            DirectoryWriter.Text(Tag.Software, $"{provenance.Program} {provenance.Version}"),
+            DirectoryWriter.Text(Tag.DateTime, request.Created.UtcDateTime.ToString("yyyy:MM:dd HH:mm:ss", CultureInfo.InvariantCulture)),
+        ];
+        if (source is null)
+            WritePlainPages(first);
+        else
+            WritePagesOfSource(source, first, ledger);
+        stack.Finish();
+        if (mask is not null)
+        {
+            WriteMaskPages(mask);
+            mask.Finish();
+        }
+    }
+
+    /// <inheritdoc/>
+    public void Dispose()
+    {
+        stack.Dispose();
+        mask?.Dispose();
+    }
+
+    private void WritePlainPages(List<OutputField> first)
+    {
+        int frames = request.Source.FrameCount;
+        for (int f = 0; f < frames; f++)
+        {
+            IEnumerable<OutputField> fields = stack.ImageFields(f, request.Source.Layout(f), TypeOf(f)).Append(stack.BlackIsZero);
+            stack.WriteDirectory(f == 0 ? fields.Concat(first) : fields, f == frames - 1);
+        }
+    }
+
+    private void WritePagesOfSource(TiffReader from, List<OutputField> first, IReadOnlyList<LedgerRow> ledger)
+    {
+        IReadOnlyList<Page> pages = [.. from.Index.Pages.Where(p => p.Layout.Carried)];
+        FileWindow window = new(from.File);
+        SegmentTable table = new(from.File);
+        Dictionary<long, IEnumerable<OutputField>> copied = [];
+        foreach (Page page in pages.Where(p => p.Layout.Frame is null))
+        {
+            table.Load(page);
+            bool tiled = TiffDirectory.Read(from.File, window, page.Directory, from.Path).Find(Tag.TileOffsets) is not null;
+            copied[page.Directory] = stack.Copy(from.File, table, tiled);
+        }
+
+        int frame = 0;
+        for (int p = 0; p < pages.Count; p++)
+        {
+            TiffDirectory directory = TiffDirectory.Read(from.File, window, pages[p].Directory, from.Path);
+            IEnumerable<OutputField> fields;
+            if (pages[p].Layout.Frame is { } layout)
+            {
+                SampleType type = TypeOf(frame);
+                bool changed = type != layout.SampleType || !ledger[frame].SourceDigest.AsSpan().SequenceEqual(ledger[frame].ResultDigest);
+                fields = stack.ImageFields(frame, layout, type)
+                    .Concat(CarriedFields.OfScience(from.File, directory, type != layout.SampleType, changed))
+                    .Append(stack.BlackIsZero);
+                frame++;
+            }
+            else
+            {
+                fields = copied[pages[p].Directory].Concat(CarriedFields.OfThumbnail(from.File, directory));
+            }
+
+            stack.WriteDirectory(p == 0 ? first.Concat(fields) : fields, p == pages.Count - 1);
+        }
+    }
+
+    private void WriteMaskPages(PageFile file)
+    {
+        int frames = request.Source.FrameCount;
+        OutputField description = DirectoryWriter.Text(
+            Tag.ImageDescription,
+            $"Change mask of {System.IO.Path.GetFileName(request.Path)}, one page per frame in the same order. Bits of each sample: "
+            + string.Join(", ", Enum.GetValues<SampleFlags>().Where(f => byte.IsPow2((byte)f)).Select(f => $"{(byte)f} {f}")) + ".");
+        for (int f = 0; f < frames; f++)
+        {
+            IEnumerable<OutputField> fields = file.ImageFields(f, request.Source.Layout(f), SampleType.UInt8).Append(file.BlackIsZero);
+            file.WriteDirectory(f == 0 ? fields.Append(description) : fields, f == frames - 1);
+        }
+    }
+
+    private SampleType TypeOf(int frame) => request.SampleTypeOf(frame);
+
+    /// <summary>An upper bound of the file's size, so that no offset of a classic file can ever wrap.</summary>
+    private bool MayPass4GiB(Func<int, SampleType> typeOf)
+    {
+        long bound = 1 << 20;
+        for (int f = 0; f < request.Source.FrameCount; f++)
+        {
+            FrameLayout layout = request.Source.Layout(f);
+            long bytes = layout.Length * typeOf(f).Size();
+            bound += bytes + (bytes >> 10) + 4096 + (16 * SegmentGrid.Strips(layout.Width, layout.Height, typeOf(f).Size()).Count);
+        }
+
+        if (source is not null)
+            bound += 2 * (source.File.Length - Math.Min(source.File.Length, source.Index.ImageBytes));
+        return bound > uint.MaxValue;
+    }
+
+    /// <summary>TIFF has no fields for a scale, a zero or a missing value of stored samples.</summary>
+    private void CheckMeaning()
+    {
+        for (int f = 0; source is null && f < request.Source.FrameCount; f++)
+        {
+            FrameLayout layout = request.Source.Layout(f);
+            if (TypeOf(f) == layout.SampleType && (!layout.Transform.IsIdentity || layout.Blank is not null))
+                throw new OutputException(
+                    string.Create(CultureInfo.InvariantCulture, $"{request.Path}, frame {f}"),
+                    "the source gives its samples a scale, a zero or a missing value, for which TIFF has no fields",
+                    "ask for samples = \"float32\" or \"float64\" in the recipe's [output], or for format = \"same\"");
+        }
+    }
+}
