@@ -1,0 +1,110 @@
+using Stacks.Abstractions;
+using Stacks.Pipeline;
+using Xunit;
+
+namespace Stacks.Tests.Engine;
+
+/// <summary>Tests that count what the whole process allocates run alone.</summary>
+[CollectionDefinition(Name, DisableParallelization = true)]
+public class AloneCollection
+{
+    public const string Name = "alone";
+}
+
+[Collection(AloneCollection.Name)]
+public class MemoryTests
+{
+    [Fact]
+    public void Memory_is_used_again_from_frame_to_frame()
+    {
+        // Frames of 64 kB through every kind of buffer; after warm-up a frame may cost objects, not planes.
+        const int Side = 181;
+        long Allocated(Lattice lattice, int frames)
+        {
+            using Bench bench = new();
+            FrameLayout layout = new() { Width = Side, Height = Side, SampleType = SampleType.UInt16, Lattice = lattice };
+            for (int f = 0; f < frames; f++)
+                bench.Source.Add(layout, new ushort[Side * Side]);
+            RunPlan plan = bench.Plan() with
+            {
+                Steps = [Bench.Step(new FakeFilter("unused", FilterKind.Selective, (_, _, _, _) => { })) with
+                {
+                    Filter = new CatalogueFilter(new QuietFilter(), new PluginOrigin("Fakes", "1", "fakes.dll", "f1")),
+                }],
+            };
+            NoCopyWriter writer = new();
+            using FrameGraph graph = new(bench.Source, writer, 1, 2);
+            FrameProcessor processor = new(
+                plan, new PreparedSteps(plan), new FrameMasks(plan, default), new NoiseModels(plan), writer, Imaging.SerialBands.Instance, default);
+            long before = GC.GetTotalAllocatedBytes(precise: true);
+            graph.Run(processor.Process, _ => { }, default);
+            Assert.InRange(graph.SlotsMade, 1, 2);
+            return GC.GetTotalAllocatedBytes(precise: true) - before;
+        }
+
+        foreach (Lattice lattice in new[] { Lattice.Single, new Lattice(2, 2) })
+        {
+            _ = Allocated(lattice, 4);
+            long few = Allocated(lattice, 10), many = Allocated(lattice, 60);
+            Assert.InRange((many - few) / 50, 0, 16384);
+        }
+    }
+
+    /// <summary>Smooths by half and half with a rented plane, and allocates nothing.</summary>
+    private sealed class QuietFilter : IFilterPlugin, IFilterStep<float>
+    {
+        public string Id => "quiet";
+
+        public string Summary => "";
+
+        public string Source => "";
+
+        public FilterKind Kind => FilterKind.Smoothing;
+
+        public Equivariance Equivariance => Equivariance.Affine;
+
+        public bool NeedsNoise => false;
+
+        public IReadOnlyList<ParameterSpec> Parameters => [];
+
+        public IReadOnlyList<WorkType> WorkTypes => [WorkType.Float32];
+
+        public int? Reach => 0;
+
+        public long ScratchBytes => 0;
+
+        public IReadOnlyList<ResolvedParameter> Resolved => [];
+
+        public IFilterStep Prepare(FrameLayout layout, WorkType workType, ParameterValues values) => this;
+
+        public void Apply(Plane<float> input, Plane<SampleFlags> flags, Plane<float> output, FrameContext context)
+        {
+            Plane<float> half = context.Scratch.Rent<float>(input.Width, input.Height);
+            for (int i = 0; i < input.Length; i++)
+            {
+                half.Samples[i] = input.Samples[i] / 2;
+                output.Samples[i] = 2 * half.Samples[i];
+            }
+        }
+    }
+
+    private sealed class NoCopyWriter : IStackWriter
+    {
+        public IReadOnlyList<OutputFile> Files => [];
+
+        public void Encode(int frame, Span<byte> stored, ReadOnlySpan<byte> flags, EncodedFrame encoded) =>
+            stored.CopyTo(encoded.Data.Resize(stored.Length));
+
+        public void Write(int frame, EncodedFrame encoded)
+        {
+        }
+
+        public void Complete(ProvenanceRecord provenance, IReadOnlyList<LedgerRow> ledger)
+        {
+        }
+
+        public void Dispose()
+        {
+        }
+    }
+}
