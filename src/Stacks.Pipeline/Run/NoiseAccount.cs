@@ -22,10 +22,10 @@ internal sealed class NoiseAccount
         LedgerFlags flags = frame.Row.Flags;
         if (flags.HasFlag(LedgerFlags.NoiseDisagrees) && disagreements++ == 0)
             (firstDisagreement, firstRatio) = (frame.Row.Frame, frame.NoiseRatio);
-        if (flags.HasFlag(LedgerFlags.NoiseNotMeasurable) && unmeasurable++ == 0)
-            firstUnmeasurable = frame.Row.Frame;
         if (frame.Noise is not { } noise)
             return;
+        if (flags.HasFlag(LedgerFlags.NoiseNotMeasurable) && unmeasurable++ == 0)
+            firstUnmeasurable = frame.Row.Frame;
         if (noise.Model is null && frame.Prepared.NeedsNoise)
             leftAlone++;
         if (noise.Doubt is { } doubt && !doubts.Contains(doubt))

@@ -37,7 +37,8 @@ internal sealed class MemoryReader : IStackReader
     {
         Assert.Equal(layout.StoredBytes, samples.Length * Marshal.SizeOf<T>());
         frames.Add((layout, MemoryMarshal.AsBytes<T>(samples).ToArray()));
-        File.WriteAllBytes(Path, [.. frames.SelectMany(f => f.Stored)]);
+        using FileStream file = new(Path, frames.Count == 1 ? FileMode.Create : FileMode.Append);
+        file.Write(frames[^1].Stored);
         return this;
     }
 
