@@ -12,6 +12,9 @@ public interface IStackFormat
     /// <summary>File name extension of written files, with the dot.</summary>
     string Extension { get; }
 
+    /// <summary>Endings of file names that promise this format, with the dot, lower case; <see cref="Extension"/> is one of them.</summary>
+    IReadOnlyList<string> Endings => [Extension];
+
     /// <summary>True when a file that starts with these bytes (up to 4096 of them) is of this format.</summary>
     bool Recognises(ReadOnlySpan<byte> start);
 

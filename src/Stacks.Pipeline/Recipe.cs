@@ -106,6 +106,12 @@ public sealed record StepSection
     /// <summary>Filter id.</summary>
     public required string Filter { get; init; }
 
+    /// <summary>Where <c>filter</c> stands.</summary>
+    public RecipePlace FilterPlace { get; init; }
+
+    /// <summary>Where <c>channel</c> stands, or the table where it is absent.</summary>
+    public RecipePlace ChannelPlace { get; init; }
+
     /// <summary>Channel index or name the step is limited to; null for all.</summary>
     public string? Channel { get; init; }
 
@@ -138,8 +144,14 @@ public sealed record OutputSection
     /// <summary>Sample type.</summary>
     public SampleChoice Samples { get; init; }
 
+    /// <summary>Where <c>samples</c> stands, or the table where it is absent.</summary>
+    public RecipePlace SamplesPlace { get; init; }
+
     /// <summary>Format id; null for the input's.</summary>
     public string? Format { get; init; }
+
+    /// <summary>Where <c>format</c> stands, or the table where it is absent.</summary>
+    public RecipePlace FormatPlace { get; init; }
 
     /// <summary>Compress losslessly.</summary>
     public bool Compress { get; init; }

@@ -32,12 +32,16 @@ public static class ChannelSelector
         channel is null
         || channel == layout.ChannelName
         || channel == (layout.Channel ?? 0).ToString(System.Globalization.CultureInfo.InvariantCulture);
+
+    /// <summary>The channel as a recipe may name it: its name, else its index.</summary>
+    public static string NameOf(FrameLayout layout) =>
+        layout.ChannelName ?? (layout.Channel ?? 0).ToString(System.Globalization.CultureInfo.InvariantCulture);
 }
 
 /// <summary>Everything about one stack's run, resolved before it starts. The run adds nothing of its own.</summary>
-public sealed record RunPlan
+public sealed record RunPlan : IDisposable
 {
-    /// <summary>The input, open. The run does not dispose it.</summary>
+    /// <summary>The input, open. The run does not dispose it; the plan does.</summary>
     public required IStackReader Reader { get; init; }
 
     /// <summary>The recipe.</summary>
@@ -75,6 +79,20 @@ public sealed record RunPlan
     /// returns. Null only where the recipe names neither.
     /// </summary>
     public Func<string, IStackReader>? OpenStack { get; init; }
+
+    /// <summary>The kinds of frame in the stack with their prepared steps, for plans and reports; empty in plans made by hand.</summary>
+    public IReadOnlyList<FrameKind> Kinds { get; init; } = [];
+
+    /// <summary>Memory that the run needs; null in plans made by hand.</summary>
+    public MemoryNeed? Memory { get; init; }
+
+    /// <summary>The noise table for a frame: the one that names its channel, else the one for all; null when there is neither.</summary>
+    public NoiseSection? NoiseSectionOf(FrameLayout layout) =>
+        Recipe.Noise.FirstOrDefault(n => n.Channel is not null && ChannelSelector.Matches(n.Channel, layout))
+        ?? Recipe.Noise.FirstOrDefault(n => n.Channel is null);
+
+    /// <summary>Closes the input.</summary>
+    public void Dispose() => Reader.Dispose();
 
     /// <summary>The frame's layout with the recipe's mosaic and saturation applied.</summary>
     public FrameLayout LayoutOf(int frame)
