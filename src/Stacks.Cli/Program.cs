@@ -1,1 +1,1 @@
-return 0;
+return Stacks.Cli.CommandLine.Run(args);

@@ -143,4 +143,8 @@ public enum RunOutcome
 /// <param name="Files">Final paths of all files made, the stack first.</param>
 /// <param name="Warnings">Sentences for the user, each with its frame where it has one.</param>
 public sealed record RunResult(
-    RunOutcome Outcome, ProvenanceRecord? Provenance, IReadOnlyList<string> Files, IReadOnlyList<string> Warnings);
+    RunOutcome Outcome, ProvenanceRecord? Provenance, IReadOnlyList<string> Files, IReadOnlyList<string> Warnings)
+{
+    /// <summary>A row per frame, in order; empty when the output was already done.</summary>
+    public IReadOnlyList<LedgerRow> Ledger { get; init; } = [];
+}

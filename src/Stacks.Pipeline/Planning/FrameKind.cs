@@ -16,9 +16,8 @@ public sealed record KindStep(PlannedStep Step, WorkType WorkType, IReadOnlyList
 /// <param name="Count">How many there are.</param>
 /// <param name="Steps">The steps that apply to them.</param>
 /// <param name="Output">Sample type of their results.</param>
-/// <param name="Noise">The noise table for them; null when the recipe has none.</param>
-public sealed record FrameKind(
-    FrameLayout Layout, int FirstFrame, int Count, IReadOnlyList<KindStep> Steps, SampleType Output, NoiseSection? Noise);
+/// <param name="Noise">Origin and formula of the noise model of the first of them; null when there is none.</param>
+public sealed record FrameKind(FrameLayout Layout, int FirstFrame, int Count, IReadOnlyList<KindStep> Steps, SampleType Output, string? Noise);
 
 /// <summary>Sorts a stack's frames into kinds and prepares every step on each, so that errors come before the run.</summary>
 internal static class FrameKinds
@@ -36,12 +35,13 @@ internal static class FrameKinds
 
         CheckChannels(plan.Recipe, plan.Steps, layouts.Keys);
         PreparedSteps prepared = new(plan);
-        return [.. layouts.OrderBy(k => k.Value.First).Select(k => Kind(plan, prepared.For(k.Key), k.Value.First, k.Value.Count))];
+        NoiseModels models = new(plan);
+        return [.. layouts.OrderBy(k => k.Value.First).Select(k => Kind(prepared.For(k.Key), models, k.Value.First, k.Value.Count))];
     }
 
-    private static FrameKind Kind(RunPlan plan, PreparedFrame frame, int first, int count)
+    private static FrameKind Kind(PreparedFrame frame, NoiseModels models, int first, int count)
     {
-        NoiseSection? noise = plan.NoiseSectionOf(frame.Layout);
+        FrameNoise? noise = models.For(first, frame.Layout);
         foreach (PreparedStep step in frame.Parts[0].Steps.Where(s => s.NeedsNoise && noise is null))
         {
             throw new RecipeException(step.Planned.Section.Place.ToString(),
@@ -49,7 +49,8 @@ internal static class FrameKinds
                 "add a noise table for that channel, or one without channel = ... for all others");
         }
 
-        return new FrameKind(frame.Layout, first, count, [.. frame.Parts[0].Steps.Select((s, i) => Step(s, frame, i))], frame.OutputType, noise);
+        string? text = noise?.Model is { } model ? $"{noise.Origin}: {model.Describe()}" : noise?.Origin;
+        return new FrameKind(frame.Layout, first, count, [.. frame.Parts[0].Steps.Select((s, i) => Step(s, frame, i))], frame.OutputType, text);
     }
 
     private static KindStep Step(PreparedStep step, PreparedFrame frame, int index) => new(

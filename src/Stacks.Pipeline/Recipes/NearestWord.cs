@@ -1,7 +1,7 @@
 namespace Stacks.Pipeline;
 
 /// <summary>Suggestions for misspelt words.</summary>
-internal static class NearestWord
+public static class NearestWord
 {
     /// <summary>
     /// <c>did you mean X? </c> before a list of all known words, when one is near enough: at most a third of its

@@ -23,7 +23,7 @@ internal sealed class NoiseModels(RunPlan plan)
     /// <exception cref="RecipeException">The recipe, with the headers where it asks for them, leaves a value open.</exception>
     public FrameNoise? For(int frame, FrameLayout layout)
     {
-        NoiseSection? section = plan.Recipe.Noise.FirstOrDefault(s => ChannelSelector.Matches(s.Channel, layout));
+        NoiseSection? section = plan.NoiseSectionOf(layout);
         return section?.From switch
         {
             null => null,

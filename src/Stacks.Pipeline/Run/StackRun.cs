@@ -72,7 +72,10 @@ public static class StackRun
             throw;
         }
 
-        return new RunResult(RunOutcome.Made, account.Provenance, [.. written.Select(f => f.Final), sidecar.Final], account.Warnings);
+        return new RunResult(RunOutcome.Made, account.Provenance, [.. written.Select(f => f.Final), sidecar.Final], account.Warnings)
+        {
+            Ledger = account.Ledger,
+        };
     }
 
     private static WriteRequest RequestOf(RunPlan plan, DateTimeOffset created) => new()
