@@ -20,11 +20,17 @@ public static class DifferenceNoise
 
     /// <summary>
     /// Of large frames evenly spaced rows are used, the same ones every time, until about this many responses; the
-    /// standard error of sigma is then about 0.4 %.
+    /// standard error of sigma is then about 0.6 %.
     /// </summary>
-    public const int MostResponses = 1 << 18;
+    public const int MostResponses = 1 << 17;
 
     private const SampleFlags Unusable = SampleFlags.Missing | SampleFlags.Saturated;
+
+    /// <summary>Bytes of scratch that measuring a frame rents, at most.</summary>
+    public static long ScratchBytes(int width, int height) =>
+        (2 * sizeof(double) * Math.Min((long)width * height, MostResponses + (2L * width)))
+        + ((sizeof(double) + (2 * sizeof(float))) * (long)width)
+        + (sizeof(int) * (long)RankSelection.Counts);
 
     /// <summary>Measures a frame.</summary>
     /// <param name="values">Values.</param>

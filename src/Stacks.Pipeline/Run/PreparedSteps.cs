@@ -66,7 +66,8 @@ internal sealed class PreparedSteps(RunPlan plan)
         return new PreparedFrame(layout, plan.OutputTypeOf(layout), parts);
     }
 
-    private static FrameLayout Sublattice(FrameLayout layout, int offsetX, int offsetY) => layout with
+    /// <summary>Layout of the sub-lattice at an offset.</summary>
+    public static FrameLayout Sublattice(FrameLayout layout, int offsetX, int offsetY) => layout with
     {
         Width = Mosaic.Share(layout.Width, layout.Lattice.PeriodX, offsetX),
         Height = Mosaic.Share(layout.Height, layout.Lattice.PeriodY, offsetY),

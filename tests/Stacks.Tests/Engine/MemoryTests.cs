@@ -14,45 +14,64 @@ public class AloneCollection
 [Collection(AloneCollection.Name)]
 public class MemoryTests
 {
-    [Fact]
-    public void Memory_is_used_again_from_frame_to_frame()
+    public static TheoryData<Lattice> Lattices => new(Lattice.Single, new Lattice(2, 2));
+
+    [Theory]
+    [MemberData(nameof(Lattices))]
+    public void Memory_is_used_again_from_frame_to_frame(Lattice lattice)
     {
         // Frames of 64 kB through every kind of buffer; after warm-up a frame may cost objects, not planes.
-        const int Side = 181;
-        long Allocated(Lattice lattice, int frames)
-        {
-            using Bench bench = new();
-            FrameLayout layout = new() { Width = Side, Height = Side, SampleType = SampleType.UInt16, Lattice = lattice };
-            for (int f = 0; f < frames; f++)
-                bench.Source.Add(layout, new ushort[Side * Side]);
-            RunPlan plan = bench.Plan() with
-            {
-                Steps = [Bench.Step(new FakeFilter("unused", FilterKind.Selective, (_, _, _, _) => { })) with
-                {
-                    Filter = new CatalogueFilter(new QuietFilter(), new PluginOrigin("Fakes", "1", "fakes.dll", "f1")),
-                }],
-            };
-            NoCopyWriter writer = new();
-            using FrameGraph graph = new(bench.Source, writer, 1, 2);
-            FrameProcessor processor = new(
-                plan, new PreparedSteps(plan), new FrameMasks(plan, default), new NoiseModels(plan), writer, Imaging.SerialBands.Instance, default);
-            long before = GC.GetTotalAllocatedBytes(precise: true);
-            graph.Run(processor.Process, _ => { }, default);
-            Assert.InRange(graph.SlotsMade, 1, 2);
-            return GC.GetTotalAllocatedBytes(precise: true) - before;
-        }
+        _ = Allocated(lattice, 181, 4);
+        long few = Allocated(lattice, 181, 10), many = Allocated(lattice, 181, 60);
+        Assert.InRange((many - few) / 50, 0, 16384);
+    }
 
-        foreach (Lattice lattice in new[] { Lattice.Single, new Lattice(2, 2) })
+    [Theory]
+    [MemberData(nameof(Lattices))]
+    public void The_need_that_a_plan_states_is_what_a_frame_takes(Lattice lattice)
+    {
+        const int Side = 1000;
+        using Bench bench = WithFrames(lattice, Side, 1);
+        _ = Allocated(lattice, Side, 1);
+        Assert.InRange(Allocated(lattice, Side, 1), 0.8 * FrameMemory.BytesOf(Plan(bench), 0), FrameMemory.BytesOf(Plan(bench), 0));
+    }
+
+    private static Bench WithFrames(Lattice lattice, int side, int frames)
+    {
+        Bench bench = new();
+        FrameLayout layout = new() { Width = side, Height = side, SampleType = SampleType.UInt16, Lattice = lattice };
+        for (int f = 0; f < frames; f++)
+            bench.Source.Add(layout, new ushort[side * side]);
+        return bench;
+    }
+
+    private static RunPlan Plan(Bench bench) => bench.Plan() with
+    {
+        Steps = [Bench.Step(new FakeFilter("unused", FilterKind.Selective, (_, _, _, _) => { })) with
         {
-            _ = Allocated(lattice, 4);
-            long few = Allocated(lattice, 10), many = Allocated(lattice, 60);
-            Assert.InRange((many - few) / 50, 0, 16384);
-        }
+            Filter = new CatalogueFilter(new QuietFilter(), new PluginOrigin("Fakes", "1", "fakes.dll", "f1")),
+        }],
+    };
+
+    private static long Allocated(Lattice lattice, int side, int frames)
+    {
+        using Bench bench = WithFrames(lattice, side, frames);
+        RunPlan plan = Plan(bench);
+        NoCopyWriter writer = new();
+        using FrameGraph graph = new(bench.Source, writer, 1, 2);
+        FrameProcessor processor = new(
+            plan, new PreparedSteps(plan), new FrameMasks(plan, default), new NoiseModels(plan), writer, Imaging.SerialBands.Instance, default);
+        long before = GC.GetTotalAllocatedBytes(precise: true);
+        graph.Run(processor.Process, _ => { }, default);
+        Assert.InRange(graph.SlotsMade, 1, 2);
+        return GC.GetTotalAllocatedBytes(precise: true) - before;
     }
 
     /// <summary>Smooths by half and half with a rented plane, and allocates nothing.</summary>
     private sealed class QuietFilter : IFilterPlugin, IFilterStep<float>
     {
+        private long samples;
+
         public string Id => "quiet";
 
         public string Summary => "";
@@ -71,11 +90,15 @@ public class MemoryTests
 
         public int? Reach => 0;
 
-        public long ScratchBytes => 0;
+        public long ScratchBytes => samples * sizeof(float);
 
         public IReadOnlyList<ResolvedParameter> Resolved => [];
 
-        public IFilterStep Prepare(FrameLayout layout, WorkType workType, ParameterValues values) => this;
+        public IFilterStep Prepare(FrameLayout layout, WorkType workType, ParameterValues values)
+        {
+            samples = layout.Length;
+            return this;
+        }
 
         public void Apply(Plane<float> input, Plane<SampleFlags> flags, Plane<float> output, FrameContext context)
         {
@@ -92,8 +115,11 @@ public class MemoryTests
     {
         public IReadOnlyList<OutputFile> Files => [];
 
-        public void Encode(int frame, Span<byte> stored, ReadOnlySpan<byte> flags, EncodedFrame encoded) =>
+        public void Encode(int frame, Span<byte> stored, ReadOnlySpan<byte> flags, EncodedFrame encoded)
+        {
             stored.CopyTo(encoded.Data.Resize(stored.Length));
+            flags.CopyTo(encoded.Mask.Resize(flags.Length));
+        }
 
         public void Write(int frame, EncodedFrame encoded)
         {
