@@ -14,7 +14,7 @@ public sealed record MemoryNeed(long BaseBytes, long FrameBytes)
 
     /// <summary>The need of a stack's frames.</summary>
     public static MemoryNeed Of(IReadOnlyList<FrameKind> kinds, bool mask) =>
-        new(Runtime, kinds.Max(k => FrameBytesOf(k, mask)));
+        new(Runtime, kinds.Max(k => FrameMemory.BytesOf(k, mask)));
 
     /// <summary>Bytes for a number of frames in flight.</summary>
     public long For(int framesInFlight) => BaseBytes + (FrameBytes * framesInFlight);
@@ -32,24 +32,6 @@ public sealed record MemoryNeed(long BaseBytes, long FrameBytes)
 
         return (int)Math.Min(wanted, fitting);
     }
-
-    private static long FrameBytesOf(FrameKind kind, bool mask)
-    {
-        FrameLayout layout = kind.Layout;
-        long outBytes = layout.Length * kind.Output.Size();
-        long planes = kind.Steps.Count == 0 ? 0 : 2 * layout.Length * kind.Steps.Max(s => SizeOf(s.WorkType));
-        long parts = layout.Lattice.IsSingle ? 0 : planes / 2;
-        long flags = layout.Length * (mask ? 2 : 1);
-        long scratch = kind.Steps.Count == 0 ? 0 : kind.Steps.Max(s => s.ScratchBytes);
-        return (2 * layout.StoredBytes) + (2 * outBytes) + planes + parts + flags + scratch;
-    }
-
-    private static int SizeOf(WorkType type) => type switch
-    {
-        WorkType.UInt16 or WorkType.Int16 => 2,
-        WorkType.Float32 => 4,
-        _ => 8,
-    };
 
     private static string Megabytes(long bytes) => $"{(bytes + (1 << 20) - 1) >> 20}MiB";
 }

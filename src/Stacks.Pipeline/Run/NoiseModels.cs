@@ -49,8 +49,6 @@ internal sealed class NoiseModels(RunPlan plan)
     private FrameNoise FromHeader(NoiseSection section, int frame, FrameLayout layout)
     {
         HeaderNoise header = plan.Reader.NoiseOf(frame);
-        if (section.Sigma is { } sigma)
-            return new FrameNoise(LinearNoise.Constant(sigma), "recipe", null);
         NoiseModel model = Camera(
             section,
             section.Gain ?? header.Gain,

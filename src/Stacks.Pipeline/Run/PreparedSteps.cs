@@ -50,11 +50,21 @@ internal sealed class PreparedSteps(RunPlan plan)
 
     /// <summary>The steps for a frame.</summary>
     /// <exception cref="RecipeException">A filter refuses its parameters for this kind of frame.</exception>
+    /// <exception cref="StackFormatException">A frame is too large to be held in memory at once.</exception>
     public PreparedFrame For(FrameLayout layout) =>
         known.GetOrAdd(layout with { Z = null, Time = null, Extension = null }, Prepare);
 
     private PreparedFrame Prepare(FrameLayout layout)
     {
+        SampleType outputType = plan.OutputTypeOf(layout);
+        if (Math.Max(layout.StoredBytes, layout.Length * outputType.Size()) > Array.MaxLength)
+        {
+            throw new StackFormatException(
+                plan.Reader.Path,
+                $"a frame of {layout.Width} x {layout.Height} samples ({layout.SampleType.Name()}, written as {outputType.Name()}) takes more than 2 GiB",
+                "cut the frames into smaller ones");
+        }
+
         Lattice lattice = layout.Lattice;
         List<PreparedPart> parts = [];
         for (int y = 0; y < Math.Min(lattice.PeriodY, layout.Height); y++)
@@ -63,7 +73,7 @@ internal sealed class PreparedSteps(RunPlan plan)
                 parts.Add(new PreparedPart(x, y, PrepareAll(lattice.IsSingle ? layout : Sublattice(layout, x, y))));
         }
 
-        return new PreparedFrame(layout, plan.OutputTypeOf(layout), parts);
+        return new PreparedFrame(layout, outputType, parts);
     }
 
     /// <summary>Layout of the sub-lattice at an offset.</summary>

@@ -100,12 +100,6 @@ internal sealed class RunAccount(RunPlan plan)
 
     private IEnumerable<string> StepWarnings()
     {
-        for (int i = 0; i < plan.Steps.Count; i++)
-        {
-            if (!Applied(i + 1).Any())
-                yield return string.Create(CultureInfo.InvariantCulture, $"step {i + 1} ({plan.Steps[i].Section.Filter}): no frame is of its channel {plan.Steps[i].Section.Channel}");
-        }
-
         if (plan.Recipe.Input.Defects is not null && !plan.Steps.Any(s => s.Filter.Plugin.Kind == FilterKind.Selective))
             yield return "defects are given, but no step is selective: none is replaced";
     }

@@ -103,6 +103,17 @@ public class StepTests
     }
 
     [Fact]
+    public void A_frame_that_no_array_can_hold_is_refused_before_memory_is_taken()
+    {
+        using Bench bench = new();
+        PreparedSteps steps = new(bench.Plan());
+        FrameLayout layout = new() { Width = 70000, Height = 70000, SampleType = SampleType.UInt8 };
+        StackFormatException fault = Assert.Throws<StackFormatException>(() => steps.For(layout));
+        Assert.Contains("70000 x 70000 samples (uint8, written as uint8) takes more than 2 GiB", fault.Message, StringComparison.Ordinal);
+        steps.For(layout with { Width = 30000, Height = 30000 });
+    }
+
+    [Fact]
     public void Steps_are_made_ready_once_for_frames_that_differ_only_in_place()
     {
         using Bench bench = new();

@@ -108,16 +108,6 @@ public class ProvenanceTests
         Assert.Contains(remarks, r => r.Contains("gain and read noise", StringComparison.Ordinal));
         Assert.Contains(remarks, r => r.Contains("moves flux", StringComparison.Ordinal));
     }
-
-    [Fact]
-    public void A_step_whose_channel_no_frame_has_is_warned_of()
-    {
-        using Bench bench = new();
-        bench.Source.Add<ushort>(Row, 1, 2, 3);
-        RunResult result = StackRun.Execute(
-            bench.Plan() with { Steps = [Bench.Step(FakeFilter.Cap(9, 9), "blue")] }, null, CancellationToken.None);
-        Assert.Equal(["step 1 (cap): no frame is of its channel blue"], result.Warnings);
-    }
 }
 
 /// <summary>Tests that set SOURCE_DATE_EPOCH run alone.</summary>
