@@ -1,0 +1,77 @@
+using System.Globalization;
+using Stacks.Abstractions;
+
+namespace Stacks.Formats.Fits;
+
+/// <summary>Numbers the science planes of a file and refuses, by name, what cannot be read.</summary>
+internal static class FrameIndex
+{
+    private const int MostAxes = 4;
+
+    /// <summary>The HDUs with layouts, frame numbers and masks.</summary>
+    /// <exception cref="StackFormatException">No science frame, truncated, or of a kind that is refused.</exception>
+    public static IReadOnlyList<Hdu> Build(FitsReader reader, List<Hdu> hdus, ReadOptions options)
+    {
+        RefuseCompressed(reader.Path, hdus, options);
+        long frames = 0;
+        for (int i = 0; i < hdus.Count; i++)
+        {
+            Hdu hdu = hdus[i];
+            if (hdu.Role == HduRole.Science && hdu.Axes.Count > MostAxes)
+                throw new StackFormatException($"{hdu.Where}, keyword NAXIS", $"an image of {hdu.Axes.Count} axes; stacks have 2, 3 or 4", "cut the array into cubes");
+            if (hdu.Role is HduRole.Science or HduRole.QualityMask)
+                hdus[i] = hdu = hdu with { Layout = ImageLayout.Read(hdu, reader.ReadHeader(hdu)), FirstFrame = (int)frames };
+            if (hdu.Role == HduRole.Science)
+                frames += hdu.Planes;
+            if (hdu.IsTruncated && !options.AllowTruncated)
+                throw Truncated(hdu, frames);
+            if (frames > int.MaxValue)
+                throw new StackFormatException(hdu.Where, $"{frames} frames are more than 2^31", "cut the stack into shorter ones");
+        }
+
+        if (reader.HeaderIsTruncated && !options.AllowTruncated)
+            throw new StackFormatException(string.Create(CultureInfo.InvariantCulture, $"{reader.Path}, HDU {hdus.Count} at byte {reader.ScannedEnd}"), $"the file ends inside this header, at byte {reader.File.Length}", "copy the file again from where it was made");
+        if (frames == 0)
+            throw NoFrames(reader.Path, hdus);
+
+        for (int i = 0; i < hdus.Count; i++)
+        {
+            if (hdus[i].Role == HduRole.Science)
+                hdus[i] = hdus[i] with { Masks = HduRoles.MasksOf(hdus[i], hdus) };
+        }
+
+        return hdus;
+    }
+
+    private static void RefuseCompressed(string path, List<Hdu> hdus, ReadOptions options)
+    {
+        Hdu? compressed = hdus.FirstOrDefault(h => h.Kind == HduKind.CompressedImage
+            && (options.Extensions is { } asked ? asked.Any(name => HduRoles.Matches(h, name)) : !ChangeMask.IsOurs(h)));
+        if (compressed is not null)
+            throw new StackFormatException(compressed.Where, $"the image '{compressed.Label}' is stored in compressed tiles, which are not read yet", $"unpack it first: funpack {System.IO.Path.GetFileName(path)}");
+    }
+
+    private static StackFormatException Truncated(Hdu hdu, long frames)
+    {
+        long end = hdu.DataOffset + hdu.PresentBytes;
+        string where = hdu.Role == HduRole.Science
+            ? string.Create(CultureInfo.InvariantCulture, $"{hdu.Where}, frame {frames} at byte {FitsReader.OffsetOf(hdu, hdu.Planes)}")
+            : string.Create(CultureInfo.InvariantCulture, $"{hdu.Where}, data at byte {hdu.DataOffset}");
+        return new StackFormatException(where, string.Create(CultureInfo.InvariantCulture, $"truncated: the file ends at byte {end}, the header promises data to byte {(Int128)hdu.DataOffset + hdu.DataBytes}"), "copy the file again from where it was made");
+    }
+
+    private static StackFormatException NoFrames(string path, List<Hdu> hdus)
+    {
+        const string remedy = "name a file, or extensions, with an image of two or more axes";
+        Hdu? groups = hdus.FirstOrDefault(h => h.Kind == HduKind.RandomGroups);
+        Hdu? line = hdus.FirstOrDefault(h => h.Kind == HduKind.Image && h.Axes.Count == 1);
+        Hdu? cut = hdus.FirstOrDefault(h => h.Role == HduRole.Science);
+        if (groups is not null)
+            return new StackFormatException(groups.Where, "random groups (GROUPS = T) are visibilities, not frames, and no image follows", remedy);
+        if (line is not null)
+            return new StackFormatException(line.Where, "an array of one axis (NAXIS = 1) is no image", remedy);
+        if (cut is not null)
+            return new StackFormatException(cut.Where, "the file ends before the end of its first frame", "copy the file again from where it was made");
+        return new StackFormatException(path, $"no science frame; there are: {string.Join("; ", hdus.Select(h => $"{h.Label} ({PartList.KindName(h)})"))}", remedy);
+    }
+}

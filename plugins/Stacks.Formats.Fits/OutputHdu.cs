@@ -1,0 +1,46 @@
+using Stacks.Abstractions;
+
+namespace Stacks.Formats.Fits;
+
+/// <summary>
+/// One HDU of the output that comes from the source: carried whole, with a new header over carried data, or with a new
+/// header over frames.
+/// </summary>
+internal sealed record OutputHdu
+{
+    /// <summary>The new header without what is added at the end of the run; null when the HDU is carried byte for byte.</summary>
+    public IReadOnlyList<FitsCard>? Cards { get; init; }
+
+    /// <summary>The HDU of the source whose data, or all of which, are carried; null when there are none.</summary>
+    public Hdu? Carried { get; init; }
+
+    /// <summary>Name for people.</summary>
+    public required string Label { get; init; }
+
+    /// <summary>Index of the first frame.</summary>
+    public int FirstFrame { get; init; }
+
+    /// <summary>Frames; 0 when the HDU holds none.</summary>
+    public int Frames { get; init; }
+
+    /// <summary>Axes of the image; frames only.</summary>
+    public IReadOnlyList<long> Axes { get; init; } = [];
+
+    /// <summary>Type of the samples; frames only.</summary>
+    public SampleType SampleType { get; init; }
+
+    /// <summary>Where its header starts.</summary>
+    public long Offset { get; init; }
+
+    /// <summary>Bytes of its header.</summary>
+    public long HeaderBytes { get; init; }
+
+    /// <summary>Bytes of its data unit, without padding.</summary>
+    public long DataBytes { get; init; }
+
+    /// <summary>Where its data unit starts.</summary>
+    public long DataOffset => Offset + HeaderBytes;
+
+    /// <summary>Where the next HDU starts.</summary>
+    public long End => DataOffset + FitsBlock.Padded(DataBytes);
+}

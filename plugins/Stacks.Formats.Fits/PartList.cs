@@ -1,0 +1,59 @@
+using System.Globalization;
+using Stacks.Abstractions;
+
+namespace Stacks.Formats.Fits;
+
+/// <summary>One line for every HDU of a file and for bytes behind the last one.</summary>
+internal static class PartList
+{
+    private const string Carried = "carried";
+
+    /// <summary>The parts of a file.</summary>
+    public static IReadOnlyList<StackPart> Of(FitsReader reader)
+    {
+        List<StackPart> parts = reader.Hdus.Select(Describe).ToList();
+        if (reader.HeaderIsTruncated)
+            parts.Add(new StackPart(string.Create(CultureInfo.InvariantCulture, $"HDU {reader.Hdus.Count}"), "truncated inside its header", "unknown", "not carried"));
+        else if (reader.File.Length > reader.ScannedEnd)
+            parts.Add(new StackPart("bytes behind the last HDU", string.Create(CultureInfo.InvariantCulture, $"{reader.File.Length - reader.ScannedEnd} bytes"), "not FITS", "not carried"));
+        return parts;
+    }
+
+    /// <summary>A word for an HDU's kind.</summary>
+    public static string KindName(Hdu hdu) => hdu.Kind switch
+    {
+        HduKind.Image => "image",
+        HduKind.Empty => "empty",
+        HduKind.Table => "table",
+        HduKind.CompressedImage => "compressed image",
+        HduKind.RandomGroups => "random groups",
+        _ => "extension of unknown type",
+    };
+
+    private static StackPart Describe(Hdu hdu)
+    {
+        string shape = hdu.Kind switch
+        {
+            HduKind.Image => ImageLayout.Describe(hdu),
+            HduKind.Empty => "no data",
+            HduKind.Table or HduKind.CompressedImage when hdu.Axes.Count == 2 => string.Create(CultureInfo.InvariantCulture, $"{hdu.Axes[1]} rows of {hdu.Axes[0]} bytes"),
+            _ => string.Create(CultureInfo.InvariantCulture, $"{hdu.DataBytes} bytes"),
+        };
+        string role = hdu.Role switch
+        {
+            HduRole.Science => "science",
+            HduRole.ErrorPlane => "error plane",
+            HduRole.QualityMask => "quality mask",
+            HduRole.OtherImage => hdu.Axes.Count == 1 ? "array of one axis" : "other image",
+            _ => KindName(hdu),
+        };
+        string fate = hdu switch
+        {
+            { Role: HduRole.Science, IsTruncated: true } => string.Create(CultureInfo.InvariantCulture, $"truncated; {hdu.Planes} whole frames filtered"),
+            { IsTruncated: true } => "truncated; not carried",
+            { Role: HduRole.Science } => "filtered",
+            _ => Carried,
+        };
+        return new StackPart(hdu.Label, shape, role, fate);
+    }
+}
