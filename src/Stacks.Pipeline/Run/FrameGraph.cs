@@ -35,7 +35,7 @@ internal sealed class FrameGraph(IStackReader reader, IStackWriter writer, int w
         TransformBlock<FrameSlot, FrameSlot> work = new(
             slot =>
             {
-                Guard(() => process(slot), stop);
+                Guard(slot, () => process(slot), stop);
                 return slot;
             },
             options);
@@ -43,6 +43,7 @@ internal sealed class FrameGraph(IStackReader reader, IStackWriter writer, int w
             slot =>
             {
                 Guard(
+                    slot,
                     () =>
                     {
                         if (slot.Frame != framesWritten)
@@ -79,7 +80,7 @@ internal sealed class FrameGraph(IStackReader reader, IStackWriter writer, int w
         {
             FrameSlot slot = await slots.LendAsync(stop.Token).ConfigureAwait(false);
             slot.Frame = frame;
-            Guard(() => reader.Read(slot.Frame, slot.Raw), stop);
+            Guard(slot, () => reader.Read(slot.Frame, slot.Raw), stop);
             await work.SendAsync(slot, stop.Token).ConfigureAwait(false);
         }
 
@@ -90,7 +91,7 @@ internal sealed class FrameGraph(IStackReader reader, IStackWriter writer, int w
     /// Runs a part of the work. A block would swallow an OperationCanceledException together with its frame, so the
     /// first fault, of whatever type, is kept here and stops the run.
     /// </summary>
-    private void Guard(Action part, CancellationTokenSource stop)
+    private void Guard(FrameSlot slot, Action part, CancellationTokenSource stop)
     {
         try
         {
@@ -100,11 +101,18 @@ internal sealed class FrameGraph(IStackReader reader, IStackWriter writer, int w
         catch (Exception fault)
         {
             if (!stop.IsCancellationRequested)
-                Interlocked.CompareExchange(ref firstFault, ExceptionDispatchInfo.Capture(fault), null);
+            {
+                Exception kept = fault is OperationCanceledException ? StoppedUnasked(slot.Frame, fault) : fault;
+                Interlocked.CompareExchange(ref firstFault, ExceptionDispatchInfo.Capture(kept), null);
+            }
+
             stop.Cancel();
             throw new OperationCanceledException(stop.Token);
         }
     }
+
+    private PluginException StoppedUnasked(int frame, Exception fault) => new(
+        $"{reader.Path}, frame {frame}", "a plugin stopped without being asked to", "report it to the author of the plugin; --verbose shows where", fault);
 
     public void Dispose() => slots.Dispose();
 }

@@ -89,6 +89,25 @@ public class FlowTests
     }
 
     [Fact]
+    public void A_format_that_throws_OperationCanceledException_does_not_lose_its_frame_silently()
+    {
+        static void Stop(int frame)
+        {
+            if (frame == 4)
+                throw new OperationCanceledException("nobody asked");
+        }
+
+        foreach (Action<MemoryReader> arrange in new Action<MemoryReader>[] { r => r.OnRead = Stop, r => r.OnDecode = Stop })
+        {
+            using Bench bench = WithFrames(10);
+            arrange(bench.Source);
+            PluginException fault = Assert.Throws<PluginException>(() => bench.Run(bench.Plan()));
+            Assert.Contains("frame 4: a plugin stopped", fault.Message, StringComparison.Ordinal);
+            LeavesNothing(bench);
+        }
+    }
+
+    [Fact]
     public void A_filter_that_fails_ends_the_run_with_its_name_and_frame()
     {
         using Bench bench = WithFrames(10);

@@ -47,6 +47,8 @@ public class StepTests
             flags.Samples[1] |= SampleFlags.KeptAsSource;
         });
         Assert.Equal<ushort>([1, 2, 3], Samples<ushort>(bench.Run(bench.Plan(careless)).Frames[0]));
+        RunPlan smoothed = bench.Plan(careless, FakeFilter.Scale(2, 0)) with { OutputPath = bench.Output + "2" };
+        Assert.Equal([2f, 4f, 6f], Samples<float>(bench.Run(smoothed).Frames[0]));
     }
 
     [Fact]

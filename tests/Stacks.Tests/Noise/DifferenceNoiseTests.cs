@@ -118,8 +118,9 @@ public class DifferenceNoiseTests
         {
             if (i % Side < Side / 2)
             {
-                flags[i] = i % 2 == 0 ? SampleFlags.Missing : SampleFlags.Saturated;
-                samples[i] = i % 3 == 0 ? double.NaN : 1e9 * (i % 5);
+                bool missing = i < samples.Length / 2;
+                flags[i] = missing ? SampleFlags.Missing : SampleFlags.Saturated;
+                samples[i] = missing && i % 3 == 0 ? double.NaN : 1e9 * (i % 5);
             }
         }
 
