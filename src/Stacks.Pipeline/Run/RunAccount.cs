@@ -69,20 +69,27 @@ internal sealed class RunAccount(RunPlan plan)
     /// <summary>A step as it took effect; a parameter that resolved differently for different frames shows each value.</summary>
     private ProvenanceStep Step(PlannedStep planned, int number)
     {
-        IEnumerable<ResolvedParameter> resolved = Applied(number)
-            .SelectMany(s => s.Step.Resolved)
-            .GroupBy(r => (r.Name, r.Unit))
-            .Select(g => new ResolvedParameter(g.Key.Name, string.Join(" | ", g.Select(r => r.Value).Distinct()), g.Key.Unit));
+        ResolvedParameter[] resolved =
+        [
+            .. Applied(number)
+                .SelectMany(s => s.Step.Resolved)
+                .GroupBy(r => (r.Name, r.Unit))
+                .Select(g => new ResolvedParameter(g.Key.Name, string.Join(" | ", g.Select(r => r.Value).Distinct()), g.Key.Unit)),
+        ];
         IEnumerable<ResolvedParameter> measured = figures
             .Where(f => f.Key.Step == number)
+            .Select(f => (f.Key.Name, Value: Range(f.Value.Least, f.Value.Most)))
+            .Where(f => !resolved.Any(r => r.Name == f.Name && r.Value == f.Value))
             .Select(f => new ResolvedParameter(
-                f.Key.Name + " on the frames",
-                string.Create(CultureInfo.InvariantCulture, $"{f.Value.Least:G6} to {f.Value.Most:G6}"),
-                planned.Filter.Plugin.Parameters.FirstOrDefault(p => p.Name == f.Key.Name)?.Unit ?? ""));
+                f.Name + " on the frames", f.Value, planned.Filter.Plugin.Parameters.FirstOrDefault(p => p.Name == f.Name)?.Unit ?? ""));
         PluginOrigin origin = planned.Filter.Origin;
         return new ProvenanceStep(
             planned.Section.Filter, origin.Assembly, origin.Version, origin.Digest, planned.Section.Channel, [.. resolved, .. measured]);
     }
+
+    private static string Range(double least, double most) => least == most
+        ? least.ToString("G6", CultureInfo.InvariantCulture)
+        : string.Create(CultureInfo.InvariantCulture, $"{least:G6} to {most:G6}");
 
     private IEnumerable<PreparedStep> Applied(int number) =>
         kinds.SelectMany(k => k.Parts).SelectMany(p => p.Steps).Where(s => s.Number == number);

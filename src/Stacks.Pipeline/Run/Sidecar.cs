@@ -1,4 +1,5 @@
 using System.Globalization;
+using System.Text.Encodings.Web;
 using System.Text.Json;
 using System.Text.Json.Nodes;
 using Stacks.Abstractions;
@@ -19,7 +20,9 @@ internal static class Sidecar
     private const string Output = "stacks:output";
     private const string Recipe = "stacks:recipe";
     private const string Run = "stacks:run";
-    private static readonly JsonSerializerOptions Indented = new() { WriteIndented = true };
+
+    // The file is read by people and programs, never as part of a web page: + and µ need no escapes.
+    private static readonly JsonSerializerOptions Indented = new() { WriteIndented = true, Encoder = JavaScriptEncoder.UnsafeRelaxedJsonEscaping };
 
     /// <summary>Digests out of a sidecar; null when it is not one.</summary>
     public static SidecarDigests? Read(string path)
