@@ -85,6 +85,23 @@ internal static class OutputFiles
         }
     }
 
+    /// <summary>
+    /// Removes companions of a replaced output that the new one does not have, such as its change mask: beside the new
+    /// stack they would tell of changes that were not made. A file that is not as its provenance says stays.
+    /// </summary>
+    /// <param name="folder">Folder of the output.</param>
+    /// <param name="companions">Companions as the replaced output's sidecar names them.</param>
+    /// <param name="made">Files of the new output.</param>
+    public static void RemoveStale(string folder, IEnumerable<NamedDigest> companions, IEnumerable<NamedDigest> made)
+    {
+        foreach (NamedDigest stale in companions.Where(c => !made.Any(m => m.Name == c.Name)))
+        {
+            string path = Path.Combine(folder, Path.GetFileName(stale.Name));
+            if (File.Exists(path) && Digests.OfFile(path, CancellationToken.None) == stale.Digest)
+                Abandon([new OutputFile(path, path)]);
+        }
+    }
+
     private static string? Difference(string path, string sidecar, Func<string> workDigest, CancellationToken cancellation)
     {
         if (!File.Exists(sidecar))

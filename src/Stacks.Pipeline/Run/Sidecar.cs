@@ -9,7 +9,8 @@ namespace Stacks.Pipeline;
 /// <summary>What a sidecar says of the work and of the stack it stands beside, in lower-case hex.</summary>
 /// <param name="Work">Digest of the work; null where it says none.</param>
 /// <param name="Output">SHA-256 of the stack; null where it says none.</param>
-internal sealed record SidecarDigests(string? Work, string? Output);
+/// <param name="Companions">The other files of the output.</param>
+internal sealed record SidecarDigests(string? Work, string? Output, IReadOnlyList<NamedDigest> Companions);
 
 /// <summary>
 /// The provenance beside an output, as W3C PROV-JSON (Member Submission, 24 April 2013): entities with their SHA-256,
@@ -17,6 +18,7 @@ internal sealed record SidecarDigests(string? Work, string? Output);
 /// </summary>
 internal static class Sidecar
 {
+    private const string Companion = "stacks:companion";
     private const string Output = "stacks:output";
     private const string Recipe = "stacks:recipe";
     private const string Run = "stacks:run";
@@ -30,8 +32,11 @@ internal static class Sidecar
         try
         {
             JsonNode? root = JsonNode.Parse(File.ReadAllText(path));
+            IEnumerable<NamedDigest> companions = (root?["entity"] as JsonObject ?? [])
+                .Where(e => e.Key.StartsWith(Companion, StringComparison.Ordinal))
+                .Select(e => new NamedDigest((string?)e.Value?["prov:label"] ?? "", (string?)e.Value?["stacks:sha256"] ?? ""));
             return new SidecarDigests(
-                (string?)root?["activity"]?[Run]?["stacks:workDigest"], (string?)root?["entity"]?[Output]?["stacks:sha256"]);
+                (string?)root?["activity"]?[Run]?["stacks:workDigest"], (string?)root?["entity"]?[Output]?["stacks:sha256"], [.. companions]);
         }
         catch (Exception fault) when (fault is JsonException or InvalidOperationException or IOException or UnauthorizedAccessException)
         {
@@ -65,7 +70,7 @@ internal static class Sidecar
         List<string> results = [];
         for (int i = 0; i < made.Count; i++)
         {
-            results.Add(i == 0 ? Output : Numbered("stacks:companion", i - 1));
+            results.Add(i == 0 ? Output : Numbered(Companion, i - 1));
             entities[results[^1]] = FileEntity(made[i].Name, made[i].Digest);
         }
 

@@ -49,6 +49,7 @@ public static class StackRun
         DateTimeOffset created = Software.Now();
         RunAccount account = new(plan);
         OutputFile sidecar = new(OutputFiles.PartialOf(OutputFiles.SidecarOf(plan.OutputPath)), OutputFiles.SidecarOf(plan.OutputPath));
+        IReadOnlyList<NamedDigest> replaced = Sidecar.Read(sidecar.Final)?.Companions ?? [];
         IReadOnlyList<OutputFile> written = [];
         try
         {
@@ -65,6 +66,7 @@ public static class StackRun
             Sidecar.Write(sidecar.Partial, account.Provenance, plan, masks.Files, made);
             cancellation.ThrowIfCancellationRequested();
             OutputFiles.Commit([sidecar, .. written.Reverse()], plan.Overwrite, sync);
+            OutputFiles.RemoveStale(Path.GetDirectoryName(Path.GetFullPath(plan.OutputPath))!, replaced, made);
         }
         catch
         {

@@ -266,7 +266,7 @@ internal sealed class Bench : IDisposable
         Overwrite = false,
     };
 
-    public static PlannedStep Step(FakeFilter filter, string? channel = null, params (string Name, ParameterValue Value)[] given)
+    public static PlannedStep Step(IFilterPlugin filter, string? channel = null, params (string Name, ParameterValue Value)[] given)
     {
         Dictionary<string, ParameterValue> values = given.ToDictionary(g => g.Name, g => g.Value);
         return new PlannedStep(

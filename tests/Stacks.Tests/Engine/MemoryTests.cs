@@ -48,10 +48,7 @@ public class MemoryTests
 
     private static RunPlan Plan(Bench bench) => bench.Plan() with
     {
-        Steps = [Bench.Step(new FakeFilter("unused", FilterKind.Selective, (_, _, _, _) => { })) with
-        {
-            Filter = new CatalogueFilter(new QuietFilter(), new PluginOrigin("Fakes", "1", "fakes.dll", "f1")),
-        }],
+        Steps = [Bench.Step(new QuietFilter())],
     };
 
     private static long Allocated(Lattice lattice, int side, int frames)

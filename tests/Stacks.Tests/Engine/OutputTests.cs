@@ -70,6 +70,20 @@ public class OutputTests
         Assert.Equal(All, bench.FilesThere);
     }
 
+    [Theory]
+    [InlineData(false)]
+    [InlineData(true)]
+    public void A_mask_that_the_new_output_does_not_have_goes_with_the_old_one_unless_it_was_changed(bool changed)
+    {
+        using Bench bench = WithFrames();
+        Outcome(bench.Plan(FakeFilter.Cap(100, 7)));
+        if (changed)
+            File.AppendAllText(bench.Output + ".mask", "mine");
+        Assert.Equal(RunOutcome.Made, Outcome(bench.Plan() with { WriteMask = false, Overwrite = true }));
+        Assert.Equal(changed, File.Exists(bench.Output + ".mask"));
+        Assert.True(File.Exists(bench.Output));
+    }
+
     [Fact]
     public void A_changed_output_and_one_without_provenance_are_refused()
     {
