@@ -10,7 +10,8 @@ namespace Stacks.Filters.AdaptiveMedian;
 /// the first with max(0, IQR - q) &lt;= g c(n) sigma(m) is trusted and decides by |v - m| &gt; t sigma(m). Where none is,
 /// with a PSF, v - m3 &gt; t sigma(m3) decides (m3 the median of the smallest window), without one
 /// |v - m| &gt; t max(IQR / c(n), sigma(m)) at K. Windows of fewer than 3 samples are passed over. A bright candidate
-/// that <see cref="OpticalBound"/> allows over Q1 of the last window is kept as a source.
+/// that <see cref="OpticalBound"/> allows over Q1 of window K is kept as a source; Q1 of a small window inside a star
+/// would be star light itself.
 /// </summary>
 internal sealed class ImpulseSearch<T>(ImpulseRules rules, WindowQuantiles[] quartiles, Windows<T> windows, NoiseModel noise)
     where T : unmanaged, INumber<T>
@@ -49,9 +50,11 @@ internal sealed class ImpulseSearch<T>(ImpulseRules rules, WindowQuantiles[] qua
                 open |= 1UL << i;
         }
 
+        int computed = 0;
         for (int w = 0; w < quartiles.Length && open != 0; w++)
         {
             quartiles[w].Row(windows, y, x, x + length, results.Slice(w * 3 * Block, 3 * length), counts.Slice(w * Block, length));
+            computed = w + 1;
             for (ulong rest = open; rest != 0; rest &= rest - 1)
             {
                 int i = BitOperations.TrailingZeroCount(rest);
@@ -62,7 +65,7 @@ internal sealed class ImpulseSearch<T>(ImpulseRules rules, WindowQuantiles[] qua
                 if (Math.Max(0, window.Range - rules.QuantisationStep) > rules.Trust * normalRange[window.Count] * sigma)
                     continue;
                 open &= ~(1UL << i);
-                judged[i] |= Decide(x + i, y, window.Median, rules.Threshold * sigma, rules.Dark, window.Lower);
+                judged[i] |= Decide(x + i, y, window.Median, rules.Threshold * sigma, rules.Dark);
             }
         }
 
@@ -71,6 +74,9 @@ internal sealed class ImpulseSearch<T>(ImpulseRules rules, WindowQuantiles[] qua
             int i = BitOperations.TrailingZeroCount(open);
             judged[i] |= WithoutTrust(x + i, y, results, counts, i, length);
         }
+
+        if (rules.PsfFwhm > 0)
+            KeepSources(judged, x, y, results, counts, computed);
     }
 
     private SampleFlags WithoutTrust(int x, int y, Span<T> results, Span<int> counts, int i, int length)
@@ -81,26 +87,42 @@ internal sealed class ImpulseSearch<T>(ImpulseRules rules, WindowQuantiles[] qua
         if (rules.PsfFwhm == 0)
         {
             double spread = Math.Max(last.Range / normalRange[last.Count], noise.Sigma(x, y, last.Median));
-            return Decide(x, y, last.Median, rules.Threshold * spread, rules.Dark, last.Lower);
+            return Decide(x, y, last.Median, rules.Threshold * spread, rules.Dark);
         }
 
         int smallest = 0;
         while (counts[(smallest * Block) + i] < LeastCount)
             smallest++;
         double median = At(results, counts, smallest, i, length).Median;
-        return Decide(x, y, median, rules.Threshold * noise.Sigma(x, y, median), dark: false, last.Lower);
+        return Decide(x, y, median, rules.Threshold * noise.Sigma(x, y, median), dark: false);
     }
 
-    private SampleFlags Decide(int x, int y, double median, double limit, bool dark, double floor)
+    private SampleFlags Decide(int x, int y, double median, double limit, bool dark)
     {
-        double value = double.CreateTruncating(windows[x, y]), excess = value - median;
+        double excess = double.CreateTruncating(windows[x, y]) - median;
         if (dark && -excess > limit)
             return SampleFlags.ReplacedDark;
-        if (!rules.Bright || !(excess > limit))
-            return SampleFlags.None;
-        return rules.PsfFwhm > 0 && OpticalBound.Allows(windows, x, y, rules.PsfFwhm, floor, noise.Sigma(x, y, value))
-            ? SampleFlags.KeptAsSource
-            : SampleFlags.ReplacedBright;
+        return rules.Bright && excess > limit ? SampleFlags.ReplacedBright : SampleFlags.None;
+    }
+
+    // Takes back what the optics could have made; the largest window is computed here where no pixel of the block needed it.
+    private void KeepSources(Span<SampleFlags> judged, int x, int y, Span<T> results, Span<int> counts, int computed)
+    {
+        int length = judged.Length, last = quartiles.Length - 1;
+        for (int i = 0; i < length; i++)
+        {
+            if ((judged[i] & SampleFlags.ReplacedBright) == 0)
+                continue;
+            if (computed <= last)
+            {
+                quartiles[last].Row(windows, y, x, x + length, results.Slice(last * 3 * Block, 3 * length), counts.Slice(last * Block, length));
+                computed = last + 1;
+            }
+
+            double sigma = noise.Sigma(x + i, y, double.CreateTruncating(windows[x + i, y]));
+            if (OpticalBound.Allows(windows, x + i, y, rules.PsfFwhm, At(results, counts, last, i, length).Lower, sigma))
+                judged[i] ^= SampleFlags.ReplacedBright | SampleFlags.KeptAsSource;
+        }
     }
 
     private static Quartiles At(Span<T> results, Span<int> counts, int window, int i, int length)

@@ -7,7 +7,8 @@ namespace Stacks.Filters.AdaptiveMedian;
 /// A real source cannot be sharper than the optics. With r = exp(-4 ln 2 / f^2), a bright candidate v over a base b may
 /// be a source only if on all four axes (d = 1 twice, d = sqrt 2 twice) the higher n of the two opposite neighbours has
 /// n - b &gt;= 0.7 r^(d d) (v - b) - 2 sigma(v). Neighbours outside of the frame are reflected like every window;
-/// a neighbour that takes no part in windows supports nothing on its side.
+/// an axis with a neighbour that takes no part in windows says nothing against a source: beside a dead pixel, the wing
+/// of a star would otherwise look sharp.
 /// </summary>
 internal static class OpticalBound
 {
@@ -43,5 +44,5 @@ internal static class OpticalBound
 
     private static bool Reaches<T>(Windows<T> windows, int x, int y, double level)
         where T : unmanaged, INumber<T> =>
-        windows.TakesPart(x, y) && double.CreateTruncating(windows[x, y]) >= level;
+        !windows.TakesPart(x, y) || double.CreateTruncating(windows[x, y]) >= level;
 }

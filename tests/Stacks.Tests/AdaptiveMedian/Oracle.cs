@@ -70,7 +70,7 @@ internal static class Oracle
                 if (dark && -difference > limit)
                     judged[At(x, y)] |= SampleFlags.ReplacedDark;
                 if (bright && difference > limit)
-                    judged[At(x, y)] |= hasPsf && IsPossibleSource(x, y, v, q1) ? SampleFlags.KeptAsSource : SampleFlags.ReplacedBright;
+                    judged[At(x, y)] |= hasPsf && IsPossibleSource(x, y, v, Type7<T>(Window(x, y, largest, TakesPart), 0.25)) ? SampleFlags.KeptAsSource : SampleFlags.ReplacedBright;
             }
         }
 
@@ -81,11 +81,9 @@ internal static class Oracle
             bool Axis(int dx, int dy)
             {
                 double fallOff = dx != 0 && dy != 0 ? r * r : r;
-                double higher = double.NegativeInfinity;
-                if (TakesPart(x + dx, y + dy))
-                    higher = Value(x + dx, y + dy);
-                if (TakesPart(x - dx, y - dy))
-                    higher = Math.Max(higher, Value(x - dx, y - dy));
+                if (!TakesPart(x + dx, y + dy) || !TakesPart(x - dx, y - dy))
+                    return true;
+                double higher = Math.Max(Value(x + dx, y + dy), Value(x - dx, y - dy));
                 return higher - floor >= (0.7 * fallOff * (v - floor)) - slack;
             }
 
