@@ -23,7 +23,7 @@ internal static class CommandLine
         Option<bool> verbose = new("--verbose") { Description = "show the stack trace of an error", Recursive = true };
         root.Options.Add(verbose);
         root.Subcommands.Add(RunVerb.Build(verbose));
-        root.Subcommands.Add(InspectVerb.Build());
+        root.Subcommands.Add(InspectVerb.Build(verbose));
         root.Subcommands.Add(FiltersVerb.Build());
 
         ParseResult parsed = root.Parse(args);

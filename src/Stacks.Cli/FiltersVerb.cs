@@ -44,7 +44,7 @@ internal static class FiltersVerb
     {
         TextTable table = new("filter", "kind", "noise model", "what it does");
         foreach (CatalogueFilter filter in catalogue.Filters)
-            table.Add(filter.Plugin.Id, Kind(filter.Plugin), filter.Plugin.NeedsNoise ? "needed" : "-", filter.Plugin.Summary);
+            table.Add(filter.Plugin.Id, Kind(filter.Plugin), filter.Plugin.NeedsNoise ? "needed" : "-", Headline(filter.Plugin.Summary));
         table.Write(Console.Out);
         Console.WriteLine();
         Console.WriteLine("formats: " + string.Join(", ", catalogue.Formats.Select(f => f.Format.Id)));
@@ -97,6 +97,9 @@ internal static class FiltersVerb
     };
 
     private static object Origin(PluginOrigin origin) => new { origin.Assembly, origin.Version, origin.Path, Sha256 = origin.Digest };
+
+    /// <summary>A summary up to its formula.</summary>
+    private static string Headline(string summary) => summary.Split(": ", 2)[0];
 
     private static string Kind(IFilterPlugin plugin) => plugin.Kind == FilterKind.Selective ? "selective" : "smoothing";
 

@@ -71,8 +71,10 @@ public sealed class RunPlanner
         if (plan.Reader.FrameCount == 0)
             throw new StackFormatException(plan.Reader.Path, "holds no science frame", "name its science extensions in [input] extensions, or another file");
         IReadOnlyList<FrameKind> kinds = FrameKinds.Of(plan);
+        FrameMasks masks = new(plan, CancellationToken.None);
         foreach (FrameKind kind in kinds)
         {
+            masks.CheckShape(kind.FirstFrame, kind.Layout);
             if (plan.OutputFormat.CannotStore(kind.Output) is { } reason)
             {
                 throw new RecipeException(recipe.Output.SamplesPlace.File is null ? recipe.Path : recipe.Output.SamplesPlace.ToString(),

@@ -22,9 +22,9 @@ internal sealed class FrameMasks
     /// <summary>The image files read, with their digests.</summary>
     public IReadOnlyList<NamedDigest> Files => [.. images.Select(i => i.File)];
 
-    /// <summary>Adds Missing and Defect to a frame's flags.</summary>
+    /// <summary>Checks that the images fit a frame.</summary>
     /// <exception cref="StackFormatException">The frame has another shape than an image.</exception>
-    public void Mark(int frame, FrameLayout layout, Span<SampleFlags> flags)
+    public void CheckShape(int frame, FrameLayout layout)
     {
         foreach (MaskImage image in images)
         {
@@ -35,7 +35,16 @@ internal sealed class FrameMasks
                     string.Create(CultureInfo.InvariantCulture, $"is {image.Width} x {image.Height} samples, but frame {frame} is {layout.Width} x {layout.Height}"),
                     "give an image of the frames' shape");
             }
+        }
+    }
 
+    /// <summary>Adds Missing and Defect to a frame's flags.</summary>
+    /// <exception cref="StackFormatException">The frame has another shape than an image.</exception>
+    public void Mark(int frame, FrameLayout layout, Span<SampleFlags> flags)
+    {
+        CheckShape(frame, layout);
+        foreach (MaskImage image in images)
+        {
             for (int i = 0; i < flags.Length; i++)
                 flags[i] |= image.Flags[i];
         }

@@ -43,6 +43,9 @@ internal abstract class WorkPlane
     /// <summary>See <see cref="RankSelection.Median"/>; missing samples do not count.</summary>
     public abstract double Median(ReadOnlySpan<SampleFlags> flags, IScratch scratch);
 
+    /// <summary>Smallest and largest value that is not missing; NaN when there is none.</summary>
+    public abstract (double Minimum, double Maximum) Extremes(ReadOnlySpan<SampleFlags> flags);
+
     /// <summary>See <see cref="DifferenceNoise.Measure"/>.</summary>
     public abstract NoiseMeasurement MeasureNoise(
         Plane<SampleFlags> flags, Lattice lattice, double quantisationStep, NoiseModel? model, IScratch scratch);
@@ -133,6 +136,22 @@ internal sealed class WorkPlane<T>(WorkType type) : WorkPlane
 
     public override double Median(ReadOnlySpan<SampleFlags> flags, IScratch scratch) => RankSelection.Median<T>(
         Values.Samples, flags, SampleFlags.Missing, scratch.Rent<int>(RankSelection.Counts, 1).Samples);
+
+    public override (double Minimum, double Maximum) Extremes(ReadOnlySpan<SampleFlags> flags)
+    {
+        double minimum = double.NaN, maximum = double.NaN;
+        ReadOnlySpan<T> samples = Values.Samples;
+        for (int i = 0; i < samples.Length; i++)
+        {
+            if ((flags[i] & SampleFlags.Missing) != 0)
+                continue;
+            double value = double.CreateTruncating(samples[i]);
+            minimum = value >= minimum ? minimum : value;
+            maximum = value <= maximum ? maximum : value;
+        }
+
+        return (minimum, maximum);
+    }
 
     public override NoiseMeasurement MeasureNoise(
         Plane<SampleFlags> flags, Lattice lattice, double quantisationStep, NoiseModel? model, IScratch scratch) =>
