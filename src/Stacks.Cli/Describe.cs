@@ -16,6 +16,8 @@ internal static class Describe
     public static string Layout(FrameLayout layout)
     {
         List<string> parts = [Shape(layout)];
+        if (layout.Extension is not null)
+            parts.Add("extension " + layout.Extension);
         if (!layout.Transform.IsIdentity)
             parts.Add(string.Create(CultureInfo.InvariantCulture, $"value = {layout.Transform.Zero:R} + {layout.Transform.Scale:R} x stored"));
         if (layout.ChannelName is not null || layout.Channel is not null)
@@ -51,6 +53,7 @@ internal static class Describe
         MosaicPeriodY = layout.Lattice.PeriodY,
         layout.Channel,
         layout.ChannelName,
+        layout.Extension,
     };
 
     /// <summary>Name of a work type.</summary>

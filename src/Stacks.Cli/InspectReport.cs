@@ -87,7 +87,7 @@ internal static class InspectReport
     private static string NoiseText(HeaderNoise noise)
     {
         if (noise.Gain is null && noise.ReadNoise is null && noise.Pedestal is null)
-            return "the headers say nothing of gain, read noise or pedestal";
+            return noise.Origin.Length > 0 ? noise.Origin : "the headers say nothing of gain, read noise or pedestal";
         string text = $"gain {Known(noise.Gain, "e-/ADU")}, read noise {Known(noise.ReadNoise, "e-")}, pedestal {Known(noise.Pedestal, "ADU")} ({noise.Origin})";
         return noise.Doubt is null ? text : $"{text}; {noise.Doubt}";
     }

@@ -15,7 +15,8 @@ public sealed record CatalogueFormat(IStackFormat Format, PluginOrigin Origin);
 /// </summary>
 public sealed class PluginCatalogue
 {
-    private PluginCatalogue(IReadOnlyList<CatalogueFilter> filters, IReadOnlyList<CatalogueFormat> formats)
+    /// <summary>A catalogue of what is given.</summary>
+    internal PluginCatalogue(IReadOnlyList<CatalogueFilter> filters, IReadOnlyList<CatalogueFormat> formats)
     {
         Filters = filters;
         Formats = formats;

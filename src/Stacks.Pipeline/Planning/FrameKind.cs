@@ -11,7 +11,7 @@ namespace Stacks.Pipeline;
 public sealed record KindStep(PlannedStep Step, WorkType WorkType, IReadOnlyList<ResolvedParameter> Resolved, int? Reach, long ScratchBytes);
 
 /// <summary>Frames that are alike in all that matters to a filter.</summary>
-/// <param name="Layout">Their layout, without z, time and extension.</param>
+/// <param name="Layout">Their layout, without z and time; with its extension only where noise comes from headers.</param>
 /// <param name="FirstFrame">Index of the first of them.</param>
 /// <param name="Count">How many there are.</param>
 /// <param name="Steps">The steps that apply to them.</param>
@@ -29,28 +29,30 @@ internal static class FrameKinds
         Dictionary<FrameLayout, (int First, int Count)> layouts = [];
         for (int frame = 0; frame < plan.Reader.FrameCount; frame++)
         {
-            FrameLayout layout = plan.LayoutOf(frame) with { Z = null, Time = null, Extension = null };
+            FrameLayout layout = plan.LayoutOf(frame) with { Z = null, Time = null };
+            if (plan.NoiseSectionOf(layout)?.From != NoiseOrigin.Header)
+                layout = layout with { Extension = null };
             layouts[layout] = layouts.TryGetValue(layout, out (int First, int Count) seen) ? (seen.First, seen.Count + 1) : (frame, 1);
         }
 
         CheckChannels(plan.Recipe, plan.Steps, layouts.Keys);
         PreparedSteps prepared = new(plan);
         NoiseModels models = new(plan);
-        return [.. layouts.OrderBy(k => k.Value.First).Select(k => Kind(prepared.For(k.Key), models, k.Value.First, k.Value.Count))];
+        return [.. layouts.OrderBy(k => k.Value.First).Select(k => Kind(k.Key, prepared.For(k.Key), models, k.Value.First, k.Value.Count))];
     }
 
-    private static FrameKind Kind(PreparedFrame frame, NoiseModels models, int first, int count)
+    private static FrameKind Kind(FrameLayout layout, PreparedFrame frame, NoiseModels models, int first, int count)
     {
-        FrameNoise? noise = models.For(first, frame.Layout);
+        FrameNoise? noise = models.For(first, layout);
         foreach (PreparedStep step in frame.Parts[0].Steps.Where(s => s.NeedsNoise && noise is null))
         {
             throw new RecipeException(step.Planned.Section.Place.ToString(),
-                $"filter {step.Planned.Section.Filter} has no noise model for channel {ChannelSelector.NameOf(frame.Layout)}",
+                $"filter {step.Planned.Section.Filter} has no noise model for channel {ChannelSelector.NameOf(layout)}",
                 "add a noise table for that channel, or one without channel = ... for all others");
         }
 
         string? text = noise?.Model is { } model ? $"{noise.Origin}: {model.Describe()}" : noise?.Origin;
-        return new FrameKind(frame.Layout, first, count, [.. frame.Parts[0].Steps.Select((s, i) => Step(s, frame, i))], frame.OutputType, text);
+        return new FrameKind(layout, first, count, [.. frame.Parts[0].Steps.Select((s, i) => Step(s, frame, i))], frame.OutputType, text);
     }
 
     private static KindStep Step(PreparedStep step, PreparedFrame frame, int index) => new(

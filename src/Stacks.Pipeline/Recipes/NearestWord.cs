@@ -4,14 +4,14 @@ namespace Stacks.Pipeline;
 public static class NearestWord
 {
     /// <summary>
-    /// <c>did you mean X? </c> before a list of all known words, when one is near enough: at most a third of its
-    /// letters changed, by edit distance (Levenshtein 1966).
+    /// <c>did you mean X? </c> before a list of all known words, when one is near enough: about a third of its
+    /// letters changed at most, by edit distance (Levenshtein 1966).
     /// </summary>
     public static string Remedy(string word, IReadOnlyCollection<string> known)
     {
         string list = known.Count == 0 ? "there are none" : "known are " + string.Join(", ", known);
         string? nearest = known.MinBy(k => Distance(word, k));
-        return nearest is not null && Distance(word, nearest) <= Math.Max(1, nearest.Length / 3)
+        return nearest is not null && Distance(word, nearest) <= Math.Max(1, (nearest.Length + 1) / 3)
             ? $"did you mean {nearest}? {list}"
             : list;
     }
