@@ -2,6 +2,7 @@ using System.CommandLine;
 using System.CommandLine.Invocation;
 using System.Globalization;
 using Stacks.Abstractions;
+using Stacks.Pipeline;
 
 namespace Stacks.Cli;
 
@@ -28,17 +29,27 @@ internal static class CommandLine
 
         ParseResult parsed = root.Parse(args);
         if (parsed.Action is ParseErrorAction)
-        {
-            string verb = parsed.CommandResult.Command is RootCommand ? "" : parsed.CommandResult.Command.Name + " ";
-            return Guarded(false, () => throw new UsageException("command line",
-                parsed.Errors[0].Message.ReplaceLineEndings(" ").TrimEnd('.'), $"see stacks {verb}--help"));
-        }
+            return Guarded(false, () => throw UsageFault(parsed));
 
         return Guarded(parsed.GetValue(verbose), () => parsed.Invoke(new InvocationConfiguration
         {
             EnableDefaultExceptionHandler = false,
             ProcessTerminationTimeout = null,
         }));
+    }
+
+    private static UsageException UsageFault(ParseResult parsed)
+    {
+        Command command = parsed.CommandResult.Command;
+        bool isRoot = command is RootCommand;
+        string help = $"see stacks {(isRoot ? "" : command.Name + " ")}--help";
+        if (isRoot && parsed.UnmatchedTokens.Count > 0)
+        {
+            string token = parsed.UnmatchedTokens[0];
+            return new UsageException("command line", $"there is no verb {token}", $"{NearestWord.Remedy(token, [.. command.Subcommands.Select(c => c.Name)])}; {help}");
+        }
+
+        return new UsageException("command line", parsed.Errors[0].Message.ReplaceLineEndings(" ").TrimEnd('.'), help);
     }
 
     /// <summary>Runs a verb; an exception becomes a line on stderr and an exit code.</summary>

@@ -1,4 +1,5 @@
 using System.CommandLine;
+using System.CommandLine.Parsing;
 using Stacks.Pipeline;
 
 namespace Stacks.Cli;
@@ -14,6 +15,21 @@ internal static class CommonOptions
         Arity = ArgumentArity.OneOrMore,
         DefaultValueFactory = _ => [],
     };
+
+    /// <summary>One or more stacks.</summary>
+    public static Argument<string[]> Stacks(string description)
+    {
+        Argument<string[]> stacks = new("STACK") { Description = description, Arity = ArgumentArity.OneOrMore };
+        RefuseOptions(stacks);
+        return stacks;
+    }
+
+    /// <summary>A misspelt option must not pass as the name of a file.</summary>
+    public static void RefuseOptions(Argument argument) => argument.Validators.Add(result =>
+    {
+        foreach (Token token in result.Tokens.Where(t => t.Value.StartsWith('-')))
+            result.AddError($"Unknown option {token.Value} (a file of that name is given as ./{token.Value})");
+    });
 
     /// <summary><c>--json</c>.</summary>
     public static Option<bool> Json() => new("--json") { Description = "write one JSON document to stdout and nothing else" };

@@ -67,4 +67,7 @@ internal static class Describe
 
     /// <summary>A number in six digits.</summary>
     public static string Number(double number) => number.ToString("G6", CultureInfo.InvariantCulture);
+
+    /// <summary>A measured number or a share, in four digits.</summary>
+    public static string Short(double number) => number.ToString("G4", CultureInfo.InvariantCulture);
 }

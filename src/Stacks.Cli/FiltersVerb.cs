@@ -11,6 +11,7 @@ internal static class FiltersVerb
     {
         Command verb = new("filters", "Lists the installed filters, or explains one of them and its parameters.");
         Argument<string?> name = new("NAME") { Description = "a filter's name", Arity = ArgumentArity.ZeroOrOne };
+        CommonOptions.RefuseOptions(name);
         Option<string[]> plugins = CommonOptions.Plugins();
         Option<bool> json = CommonOptions.Json();
         verb.Arguments.Add(name);

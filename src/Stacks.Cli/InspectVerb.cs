@@ -14,7 +14,7 @@ internal static class InspectVerb
             to {StackInspector.MostFrames} frames at even distances, checksums. Changes nothing. Exit code 0 when every stack can be
             read and is whole, 65 when one is damaged.
             """);
-        Argument<string[]> stacks = new("STACK") { Description = "the stacks to look at", Arity = ArgumentArity.OneOrMore };
+        Argument<string[]> stacks = CommonOptions.Stacks("the stacks to look at");
         Option<string[]> plugins = CommonOptions.Plugins();
         Option<bool> json = CommonOptions.Json();
         verb.Arguments.Add(stacks);

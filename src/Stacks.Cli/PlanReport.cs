@@ -45,8 +45,19 @@ internal static class PlanReport
         if (plan.Recipe.Title.Length > 0)
             Line("title", plan.Recipe.Title);
         Line("input", $"{plan.Reader.Format.Id}, {Describe.Frames(plan.Reader.FrameCount)}");
+        IReadOnlyList<string> stepsAbove = [];
         foreach (FrameKind kind in plan.Kinds)
-            WriteKind(kind, several: plan.Kinds.Count > 1);
+        {
+            IReadOnlyList<string> steps = [.. StepLines(kind)];
+            Line("frames", (plan.Kinds.Count > 1 ? $"{kind.Count} from frame {kind.FirstFrame} on: " : "") + Describe.Layout(kind.Layout));
+            Line("noise", kind.Noise ?? "no model");
+            if (steps.SequenceEqual(stepsAbove))
+                Line("steps", "as above");
+            else
+                Console.WriteLine(string.Join('\n', steps));
+            stepsAbove = steps;
+        }
+
         Line("output", $"{plan.OutputFormat.Id}, {string.Join(" | ", plan.Kinds.Select(k => k.Output.Name()).Distinct())}, "
             + $"{(plan.Recipe.Output.Compress ? "compressed losslessly" : "not compressed")}, {(plan.WriteMask ? "with" : "without")} change mask"
             + (plan.Overwrite ? ", replacing what is there" : ""));
@@ -55,24 +66,22 @@ internal static class PlanReport
         Line("recipe", $"sha256 {plan.RecipeDigest}");
     }
 
-    private static void WriteKind(FrameKind kind, bool several)
+    private static IEnumerable<string> StepLines(FrameKind kind)
     {
-        Line("frames", (several ? $"{kind.Count} from frame {kind.FirstFrame} on: " : "") + Describe.Layout(kind.Layout));
-        Line("noise", kind.Noise ?? "no model");
         for (int i = 0; i < kind.Steps.Count; i++)
         {
             KindStep step = kind.Steps[i];
             IFilterPlugin filter = step.Step.Filter.Plugin;
-            Line($"step {i + 1}", $"{filter.Id} ({step.Step.Filter.Origin.Assembly} {step.Step.Filter.Origin.Version}), "
+            yield return Labelled($"step {i + 1}", $"{filter.Id} ({step.Step.Filter.Origin.Assembly} {step.Step.Filter.Origin.Version}), "
                 + (filter.Kind == FilterKind.Selective ? "selective" : "smoothing"));
             foreach (ResolvedParameter parameter in step.Resolved)
-                Line("", $"  {parameter.Name} = {parameter.Value} {parameter.Unit}".TrimEnd());
-            Line("", "  " + (step.Reach is { } reach ? $"reaches {reach.ToString(CultureInfo.InvariantCulture)} samples far" : "sees the whole frame"));
+                yield return Labelled("", $"  {parameter.Name} = {parameter.Value} {parameter.Unit}".TrimEnd());
+            yield return Labelled("", "  " + (step.Reach is { } reach ? $"reaches {reach.ToString(CultureInfo.InvariantCulture)} samples far" : "sees the whole frame"));
         }
 
         if (kind.Steps.Count == 0)
-            Line("steps", "none: frames are copied bit for bit");
-        Line("samples", string.Join(" -> ", SampleTypesOf(kind)));
+            yield return Labelled("steps", "none: frames are copied bit for bit");
+        yield return Labelled("samples", string.Join(" -> ", SampleTypesOf(kind)));
     }
 
     private static IEnumerable<string> SampleTypesOf(FrameKind kind) =>
@@ -115,5 +124,7 @@ internal static class PlanReport
         }),
     };
 
-    private static void Line(string label, string text) => Console.WriteLine($"  {label,-9} {text}".TrimEnd());
+    private static void Line(string label, string text) => Console.WriteLine(Labelled(label, text));
+
+    private static string Labelled(string label, string text) => $"  {label,-9} {text}".TrimEnd();
 }

@@ -15,7 +15,8 @@ internal static class Progress
         RateColumn rate = new();
         return console.Progress()
             .AutoClear(true)
-            .Columns(new TaskDescriptionColumn(), new ProgressBarColumn(), new PercentageColumn(), rate, new RemainingTimeColumn())
+            .HideCompleted(true)
+            .Columns(new TaskDescriptionColumn(), new ProgressBarColumn { Width = 10 }, new PercentageColumn(), rate, new RemainingTimeColumn())
             .Start(context => work(new TerminalProgress(console, context, rate, count)));
     }
 }

@@ -71,16 +71,16 @@ internal static class RunReport
         double pixels = plan.Kinds.Sum(k => (double)k.Count * k.Layout.Length);
         if (plan.Steps.Any(s => s.Filter.Plugin.Kind == FilterKind.Selective))
         {
-            string share = Describe.Number((totals.ReplacedBright + totals.ReplacedDark) / pixels * 1e6);
+            string share = Describe.Short((totals.ReplacedBright + totals.ReplacedDark) / pixels * 1e6);
             Line("replaced", $"{totals.ReplacedBright} bright and {totals.ReplacedDark} dark pixels, {share} ppm");
-            Line("kept", $"{Describe.Count(totals.KeptAsSource, "candidate")} no sharper than the optics, kept as sources");
+            Line("kept", $"{Describe.Count(totals.KeptAsSource, "bright pixel")} no sharper than the optics, kept as sources");
         }
 
         Line("untouched", $"{totals.Saturated} saturated and {totals.Missing} missing samples");
-        string part = totals.FluxIn == 0 ? "" : $" ({Describe.Number(totals.FluxRemoved / totals.FluxIn * 100)} % of {Describe.Number(totals.FluxIn)})";
+        string part = totals.FluxIn == 0 ? "" : $" ({Describe.Short(totals.FluxRemoved / totals.FluxIn * 100)} % of {Describe.Number(totals.FluxIn)})";
         Line("flux", $"{Describe.Number(totals.FluxRemoved)} {unit} removed{part}");
         if (Median(result, r => r.NoiseBefore) is { } before && Median(result, r => r.NoiseAfter) is { } after)
-            Line("noise", $"sigma {Describe.Number(before)} {unit} before, {Describe.Number(after)} {unit} after (median over frames)");
+            Line("noise", $"sigma {Describe.Short(before)} {unit} before, {Describe.Short(after)} {unit} after (median over frames)");
     }
 
     private static IEnumerable<string> Notes(RunPlan plan)

@@ -11,7 +11,8 @@ internal static class RunVerb
     {
         Command verb = new("run", "Runs a recipe over one or more stacks. The inputs are never changed.");
         Argument<string> recipe = new("RECIPE") { Description = "the recipe, a TOML file" };
-        Argument<string[]> stacks = new("STACK") { Description = "the stacks to clean", Arity = ArgumentArity.OneOrMore };
+        Argument<string[]> stacks = CommonOptions.Stacks("the stacks to clean");
+        CommonOptions.RefuseOptions(recipe);
         Option<string> output = new("-o", "--output")
         {
             Description = "a folder for the results (made when absent), or for one stack the name of its result",

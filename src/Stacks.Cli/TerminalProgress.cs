@@ -27,6 +27,8 @@ internal sealed class TerminalProgress(IAnsiConsole console, ProgressContext con
         task = null;
         if (entry.Fault is not null)
             console.WriteLine("stacks: " + ErrorLine.Text(entry.Fault));
+        else if (entry.Result is not null)
+            console.WriteLine($"{Path.GetFileName(entry.Item.Input)}: {(entry.Result.Outcome == RunOutcome.Made ? "done in " + Rate.Clock(entry.Elapsed) : "done before")}");
     }
 }
 
@@ -38,5 +40,8 @@ internal sealed class RateColumn : ProgressColumn
 
     /// <inheritdoc/>
     public override IRenderable Render(RenderOptions options, ProgressTask task, TimeSpan deltaTime) =>
-        new Text($"{(int)task.Value} of {(int)task.MaxValue} frames, {Current?.Speed((int)task.Value)}");
+        new Text($"{(int)task.Value} of {(int)task.MaxValue}, {Current?.Speed((int)task.Value)}");
+
+    /// <inheritdoc/>
+    protected override bool NoWrap => true;
 }
