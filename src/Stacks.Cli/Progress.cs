@@ -17,7 +17,7 @@ internal static class Progress
             .AutoClear(true)
             .HideCompleted(true)
             .Columns(new TaskDescriptionColumn(), new ProgressBarColumn { Width = 10 }, new PercentageColumn(), rate, new RemainingTimeColumn())
-            .Start(context => work(new TerminalProgress(console, context, rate, count)));
+            .Start(context => work(new TerminalProgress(console, context, rate, count, verbose)));
     }
 }
 

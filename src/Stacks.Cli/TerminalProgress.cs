@@ -5,7 +5,7 @@ using Stacks.Pipeline;
 namespace Stacks.Cli;
 
 /// <summary>A live bar for the stack in hand; what has ended stays above it as plain lines.</summary>
-internal sealed class TerminalProgress(IAnsiConsole console, ProgressContext context, RateColumn rate, int count) : INightProgress
+internal sealed class TerminalProgress(IAnsiConsole console, ProgressContext context, RateColumn rate, int count, bool verbose) : INightProgress
 {
     private ProgressTask? task;
 
@@ -26,7 +26,7 @@ internal sealed class TerminalProgress(IAnsiConsole console, ProgressContext con
         task?.StopTask();
         task = null;
         if (entry.Fault is not null)
-            console.WriteLine("stacks: " + ErrorLine.Text(entry.Fault));
+            console.WriteLine("stacks: " + ErrorLine.Text(entry.Fault) + (verbose ? $"\n{entry.Fault}" : ""));
         else if (entry.Result is not null)
             console.WriteLine($"{Path.GetFileName(entry.Item.Input)}: {(entry.Result.Outcome == RunOutcome.Made ? "done in " + Rate.Clock(entry.Elapsed) : "done before")}");
     }
