@@ -42,11 +42,16 @@ internal sealed class ChangeMask : IDisposable
     }
 
     /// <summary>Writes the change mask of one HDU as an extension at an offset; returns the offset behind it.</summary>
-    public long WriteExtension(PartialFile output, long offset, OutputHdu hdu, long version)
+    /// <param name="output">The file.</param>
+    /// <param name="offset">The offset.</param>
+    /// <param name="hdu">The HDU with the frames that the flags are for.</param>
+    /// <param name="version">EXTVER.</param>
+    /// <param name="longestShortHeap">Bytes of tiles beyond which their offsets take 64 bits.</param>
+    public long WriteExtension(PartialFile output, long offset, OutputHdu hdu, long version, long longestShortHeap = int.MaxValue)
     {
         List<int> tiles = lengths.GetRange(hdu.FirstFrame, hdu.Frames);
         long heapBytes = tiles.Sum(length => (long)length);
-        bool isLong = heapBytes > int.MaxValue;
+        bool isLong = heapBytes > longestShortHeap;
         List<FitsCard> cards = Header(hdu, version, tiles, heapBytes, isLong);
         long headerBytes = HeaderImage.BytesFor(cards.Count);
         DataUnit data = new(output, offset + headerBytes);

@@ -12,6 +12,9 @@ internal sealed class FitsHeader
     /// <summary>28.8 MB; the longest headers in use are far below. Bounds what a file without END can make us read.</summary>
     private const int MostBlocks = 10_000;
 
+    /// <summary>2^53: doubles below it hold every integer.</summary>
+    private const double LargestExactInteger = 1L << 53;
+
     /// <summary>A header of given cards.</summary>
     public FitsHeader(string where, IReadOnlyList<FitsCard> cards, long bytes)
     {
@@ -106,14 +109,16 @@ internal sealed class FitsHeader
         return null;
     }
 
-    /// <summary>An integer of this header; null when absent.</summary>
+    /// <summary>An integer of this header, also one that is written as a real number; null when absent.</summary>
     /// <exception cref="StackFormatException">The value is no integer of 64 bits.</exception>
     public long? OwnInteger(string keyword)
     {
         if (Own(keyword) is not { } card)
             return null;
-        return long.TryParse(card.Value, NumberStyles.AllowLeadingSign, CultureInfo.InvariantCulture, out long value)
-            ? value
+        if (long.TryParse(card.Value, NumberStyles.AllowLeadingSign, CultureInfo.InvariantCulture, out long value))
+            return value;
+        return ParseNumber(card.Value) is { } number && Math.Abs(number) < LargestExactInteger && number == Math.Truncate(number)
+            ? (long)number
             : throw new StackFormatException($"{Where}, keyword {keyword}", $"'{card.Value}' is not an integer", "repair the header or get the file again");
     }
 

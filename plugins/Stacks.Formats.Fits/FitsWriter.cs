@@ -69,12 +69,13 @@ internal sealed class FitsWriter : IStackWriter
         {
             OutputHdu hdu = hdus[i];
             if (hdu.Carried is { } carried)
-                dataSums[i] = hdu.Cards is null ? CopyWhole(carried, hdu) : Copy(carried.DataOffset, carried.PresentBytes, hdu.DataOffset);
-            if (hdu.Cards is not { } cards)
+                dataSums[i] = hdu.MakeCards is null ? CopyWhole(carried, hdu) : Copy(carried.DataOffset, carried.PresentBytes, hdu.DataOffset);
+            if (hdu.MakeCards is not { } makeCards)
                 continue;
-            int room = OutputPlan.Reserve - HeaderImage.OwnCards;
-            IReadOnlyList<FitsCard> complete = i == 0 ? [.. cards, .. ProvenanceCards.Of(provenance, Losses(), room)] : cards;
-            output.Write(HeaderImage.Build(complete, hdu.HeaderBytes, dataSums[i]), hdu.Offset);
+            List<FitsCard> cards = makeCards();
+            if (i == 0)
+                cards.AddRange(ProvenanceCards.Of(provenance, Losses(), HeaderImage.RoomFor(hdu.HeaderBytes) - cards.Count));
+            output.Write(HeaderImage.Build(cards, hdu.HeaderBytes, dataSums[i]), hdu.Offset);
         }
 
         long end = hdus[^1].End;

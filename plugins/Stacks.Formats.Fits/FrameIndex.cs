@@ -20,9 +20,13 @@ internal static class FrameIndex
             if (hdu.Role == HduRole.Science && hdu.Axes.Count > MostAxes)
                 throw new StackFormatException($"{hdu.Where}, keyword NAXIS", $"an image of {hdu.Axes.Count} axes; stacks have 2, 3 or 4", "cut the array into cubes");
             if (hdu.Role is HduRole.Science or HduRole.QualityMask)
-                hdus[i] = hdu = hdu with { Layout = ImageLayout.Read(hdu, reader.ReadHeader(hdu)), FirstFrame = (int)frames };
+                hdus[i] = hdu = hdu with { Layout = ImageLayout.Read(hdu, reader.ReadHeader(hdu)) };
             if (hdu.Role == HduRole.Science)
+            {
+                hdus[i] = hdu = hdu with { FirstFrame = (int)frames };
                 frames += hdu.Planes;
+            }
+
             if (hdu.IsTruncated && !options.AllowTruncated)
                 throw Truncated(hdu, frames);
             if (frames > int.MaxValue)

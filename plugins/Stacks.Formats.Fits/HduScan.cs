@@ -89,7 +89,7 @@ internal sealed class HduScan
             BitPix = bitPix,
             Axes = axes,
             Name = header.OwnText("EXTNAME")?.Trim(),
-            Version = header.OwnInteger("EXTVER"),
+            Version = header.FindNumber("EXTVER") is { } version && Math.Abs(version) < int.MaxValue ? (long)version : null,
             HeaderOffset = offset,
             DataOffset = dataOffset,
             DataBytes = dataBytes,

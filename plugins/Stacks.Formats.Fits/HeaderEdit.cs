@@ -32,13 +32,14 @@ internal static class HeaderEdit
     }
 
     /// <summary>The cards of a primary header: DATE is made anew, and EXTEND announces the extensions that follow.</summary>
-    public static void MakePrimary(List<FitsCard> cards, DateTimeOffset created)
+    public static List<FitsCard> AsPrimary(List<FitsCard> cards, DateTimeOffset created)
     {
         FitsCard date = FitsCard.Text("DATE", Stamp(created), "UTC time of making").Single();
         if (!Replace(cards, date))
             cards.Add(date);
         if (!cards.Any(card => card.Is("EXTEND") && card.Value == "T") && !Replace(cards, FitsCard.Logical("EXTEND", true, "")))
             cards.Insert(AfterAxes(cards), FitsCard.Logical("EXTEND", true, "extensions may follow"));
+        return cards;
     }
 
     /// <summary>

@@ -6,12 +6,15 @@ namespace Stacks.Formats.Fits;
 internal static class HeaderImage
 {
     /// <summary>Cards that <see cref="Build"/> adds: DATASUM, CHECKSUM and END.</summary>
-    public const int OwnCards = 3;
+    private const int OwnCards = 3;
 
     private const string Unset = "0000000000000000";
 
     /// <summary>Bytes of a header with this many cards besides those that <see cref="Build"/> adds.</summary>
     public static long BytesFor(int cards) => FitsBlock.Padded((long)(cards + OwnCards) * FitsBlock.CardBytes);
+
+    /// <summary>Cards that a header of so many bytes has room for, besides those that <see cref="Build"/> adds.</summary>
+    public static int RoomFor(long bytes) => (int)(bytes / FitsBlock.CardBytes) - OwnCards;
 
     /// <summary>Builds a header of exactly <paramref name="bytes"/> bytes.</summary>
     /// <param name="cards">Its cards; they fit.</param>

@@ -45,7 +45,8 @@ internal static class LedgerTable
     /// <summary>Every column is declared here once; those about place only where some frame has it.</summary>
     private static List<Column> Columns(IReadOnlyList<LedgerRow> rows, Func<int, FrameLayout> layoutOf)
     {
-        string unit = rows.Count > 0 ? layoutOf(rows[0].Frame).Unit : "ADU";
+        // "adu" is the standard's spelling (Standard 4.0, table 5).
+        string unit = rows.Count > 0 && layoutOf(rows[0].Frame).Unit is var stated && stated != "ADU" ? stated : "adu";
         List<Column> columns = [Count("FRAME", "", "frame of the stack, from 0", (row, _) => row.Frame)];
         if (rows.Any(row => layoutOf(row.Frame).Extension is not null))
             columns.Add(Name("EXTENSN", "extension of the source", layout => layout.Extension));

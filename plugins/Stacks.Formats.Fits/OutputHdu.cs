@@ -8,8 +8,11 @@ namespace Stacks.Formats.Fits;
 /// </summary>
 internal sealed record OutputHdu
 {
-    /// <summary>The new header without what is added at the end of the run; null when the HDU is carried byte for byte.</summary>
-    public IReadOnlyList<FitsCard>? Cards { get; init; }
+    /// <summary>
+    /// Makes the new header, without what is added at the end of the run; null when the HDU is carried byte for byte.
+    /// Made when it is needed, and the same each time: the headers of thousands of extensions are not kept.
+    /// </summary>
+    public Func<List<FitsCard>>? MakeCards { get; init; }
 
     /// <summary>The HDU of the source whose data, or all of which, are carried; null when there are none.</summary>
     public Hdu? Carried { get; init; }

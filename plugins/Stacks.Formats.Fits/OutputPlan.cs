@@ -26,25 +26,23 @@ internal static class OutputPlan
             {
                 SampleType type = TypeOf(request, hdu.FirstFrame, (int)hdu.Planes, hdu.Label);
                 IReadOnlyList<long> axes = hdu.IsTruncated ? [hdu.Axes[0], hdu.Axes[1], hdu.Planes] : hdu.Axes;
-                List<FitsCard> cards = HeaderEdit.OverFrames(source.ReadHeader(hdu), hdu, axes, type);
-                if (hdu.Index == 0)
-                    HeaderEdit.MakePrimary(cards, request.Created);
-                yield return new OutputHdu
+                List<FitsCard> MakeCards()
                 {
-                    Label = hdu.Label,
-                    Cards = cards,
-                    FirstFrame = hdu.FirstFrame,
-                    Frames = (int)hdu.Planes,
-                    Axes = axes,
-                    SampleType = type,
-                    DataBytes = hdu.Planes * hdu.Layout!.Length * type.Size(),
-                };
+                    List<FitsCard> cards = HeaderEdit.OverFrames(source.ReadHeader(hdu), hdu, axes, type);
+                    return hdu.Index == 0 ? HeaderEdit.AsPrimary(cards, request.Created) : cards;
+                }
+
+                yield return Frames(hdu.Label, MakeCards, axes, hdu.FirstFrame, (int)hdu.Planes, type);
             }
             else if (hdu.Index == 0)
             {
-                List<FitsCard> cards = [.. HeaderEdit.Carried(source.Primary)];
-                HeaderEdit.MakePrimary(cards, request.Created);
-                yield return new OutputHdu { Label = hdu.Label, Cards = cards, Carried = hdu, DataBytes = hdu.DataBytes };
+                yield return new OutputHdu
+                {
+                    Label = hdu.Label,
+                    MakeCards = () => HeaderEdit.AsPrimary([.. HeaderEdit.Carried(source.Primary)], request.Created),
+                    Carried = hdu,
+                    DataBytes = hdu.DataBytes,
+                };
             }
             else
             {
@@ -64,28 +62,25 @@ internal static class OutputPlan
         if (isCube)
         {
             IReadOnlyList<long> axes = source.FrameCount == 1 ? [first.Width, first.Height] : [first.Width, first.Height, source.FrameCount];
-            List<FitsCard> cards = NewHeader.Primary(axes, first, firstType);
-            HeaderEdit.MakePrimary(cards, request.Created);
-            yield return Frames("primary", cards, axes, 0, source.FrameCount, firstType);
+            yield return Frames("primary", () => HeaderEdit.AsPrimary(NewHeader.Primary(axes, first, firstType), request.Created), axes, 0, source.FrameCount, firstType);
             yield break;
         }
 
-        List<FitsCard> empty = NewHeader.EmptyPrimary();
-        HeaderEdit.MakePrimary(empty, request.Created);
-        yield return new OutputHdu { Label = "primary", Cards = empty };
+        yield return new OutputHdu { Label = "primary", MakeCards = () => HeaderEdit.AsPrimary(NewHeader.EmptyPrimary(), request.Created) };
         for (int i = 0; i < source.FrameCount; i++)
         {
             FrameLayout layout = source.Layout(i);
             IReadOnlyList<long> axes = [layout.Width, layout.Height];
             SampleType type = request.SampleTypeOf(i);
-            yield return Frames(string.Create(CultureInfo.InvariantCulture, $"{NewHeader.ExtensionName},{i + 1}"), NewHeader.Extension(axes, layout, type, i + 1), axes, i, 1, type);
+            int version = i + 1;
+            yield return Frames(string.Create(CultureInfo.InvariantCulture, $"{NewHeader.ExtensionName},{version}"), () => NewHeader.Extension(axes, layout, type, version), axes, i, 1, type);
         }
     }
 
-    private static OutputHdu Frames(string label, List<FitsCard> cards, IReadOnlyList<long> axes, int first, int count, SampleType type) => new()
+    private static OutputHdu Frames(string label, Func<List<FitsCard>> makeCards, IReadOnlyList<long> axes, int first, int count, SampleType type) => new()
     {
         Label = label,
-        Cards = cards,
+        MakeCards = makeCards,
         FirstFrame = first,
         Frames = count,
         Axes = axes,
@@ -100,7 +95,7 @@ internal static class OutputPlan
         long offset = 0;
         foreach (OutputHdu hdu in hdus)
         {
-            long header = hdu.Cards is { } cards ? HeaderImage.BytesFor(cards.Count + (placed.Count == 0 ? Reserve : 0)) : hdu.HeaderBytes;
+            long header = hdu.MakeCards is { } makeCards ? HeaderImage.BytesFor(makeCards().Count + (placed.Count == 0 ? Reserve : 0)) : hdu.HeaderBytes;
             placed.Add(hdu with { Offset = offset, HeaderBytes = header });
             offset = placed[^1].End;
         }

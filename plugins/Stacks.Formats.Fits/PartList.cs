@@ -45,6 +45,7 @@ internal static class PartList
             HduRole.ErrorPlane => "error plane",
             HduRole.QualityMask => "quality mask",
             HduRole.OtherImage => hdu.Axes.Count == 1 ? "array of one axis" : "other image",
+            _ when ChangeMask.IsOurs(hdu) => "change mask of an earlier run",
             _ => KindName(hdu),
         };
         string fate = hdu switch

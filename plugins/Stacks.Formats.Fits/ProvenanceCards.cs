@@ -41,30 +41,33 @@ internal static class ProvenanceCards
         if (cards.Count <= room)
             return cards;
         cards.RemoveRange(room - 1, cards.Count - room + 1);
-        return [.. cards, .. FitsCard.Commentary("HISTORY", "  The header is full; the rest stands in the .prov.json beside it.")];
+        return [.. cards, .. FitsCard.Commentary("HISTORY", " The header is full; the rest stands in the .prov.json beside it.")];
     }
 
     /// <summary>The run in words, a line for each fact.</summary>
     private static IEnumerable<string> History(ProvenanceRecord record, IEnumerable<string> notes)
     {
-        yield return $"{record.Program} {record.Version}, {HeaderEdit.Stamp(record.Created)} UTC; digests are SHA-256 (full in STK...)";
-        yield return $"  source {record.SourceName} {Short(record.SourceDigest)}";
-        yield return $"  recipe {Short(record.RecipeDigest)} (STKRECIP), work {Short(record.WorkDigest)} (STKWORK)";
+        // A later run replaces the keywords, so that HISTORY holds the digests in full; they just fit a card.
+        yield return $"{record.Program} {record.Version}, {HeaderEdit.Stamp(record.Created)} UTC; digests are SHA-256";
+        yield return $" source {record.SourceName}";
+        yield return $" source {record.SourceDigest}";
+        yield return $" recipe {record.RecipeDigest}";
+        yield return $" work   {record.WorkDigest}";
         for (int i = 0; i < record.Steps.Count; i++)
         {
             ProvenanceStep step = record.Steps[i];
             string channel = step.Channel is null ? "" : $" on channel {step.Channel}";
-            yield return string.Create(CultureInfo.InvariantCulture, $"  step {i + 1}: {step.Filter}{channel}, {step.Plugin} {step.Version} {Short(step.PluginDigest)}");
+            yield return string.Create(CultureInfo.InvariantCulture, $" step {i + 1}: {step.Filter}{channel}, {step.Plugin} {step.Version} {Short(step.PluginDigest)}");
             foreach (ResolvedParameter parameter in step.Parameters)
-                yield return $"    {parameter.Name} = {parameter.Value} {parameter.Unit}".TrimEnd();
+                yield return $"   {parameter.Name} = {parameter.Value} {parameter.Unit}".TrimEnd();
         }
 
         if (record.Steps.Count == 0)
-            yield return "  no steps: samples are the source's";
+            yield return " no steps: samples are the source's";
         foreach (string line in record.Noise)
-            yield return $"  noise: {line}";
+            yield return $" noise: {line}";
         foreach (string line in record.Remarks.Concat(notes))
-            yield return $"  note: {line}";
+            yield return $" note: {line}";
     }
 
     private static string Short(string digest) => digest.Length > 16 ? digest[..16] : digest;
