@@ -31,7 +31,7 @@ internal sealed class HduScan
     {
         HduScan scan = new();
         Span<byte> start = stackalloc byte[9];
-        while (file.Length - scan.End >= FitsBlock.Bytes)
+        while (file.Length - scan.End >= start.Length)
         {
             int index = scan.Hdus.Count;
             file.Read(start, scan.End);
@@ -60,7 +60,7 @@ internal sealed class HduScan
         file.Read(start, 0);
         if (start is [0x1F, 0x8B, ..])
             return new StackFormatException(file.Path, "a gzipped file, which is not read yet", $"unpack it first: gunzip -k {Path.GetFileName(file.Path)}");
-        if (headerIsTruncated || start.AsSpan().SequenceEqual("SIMPLE  ="u8))
+        if (headerIsTruncated)
             return new StackFormatException($"{file.Path}, byte {file.Length}", "the file ends inside its first header", GetAgain);
         return new StackFormatException($"{file.Path}, byte 0", "not FITS: it does not begin with 'SIMPLE  ='", "check that this is the file you mean");
     }

@@ -80,7 +80,8 @@ public static class PassThrough
         Flags = LedgerFlags.NoiseDisagrees | LedgerFlags.OutOfRange,
     };
 
-    private static ProvenanceRecord Provenance(IStackReader source) => new()
+    /// <summary>A record with something in every field.</summary>
+    public static ProvenanceRecord Provenance(IStackReader source) => new()
     {
         Program = "Stacks",
         Version = "0.1.0",
