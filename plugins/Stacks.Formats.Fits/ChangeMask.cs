@@ -99,6 +99,8 @@ internal sealed class ChangeMask : IDisposable
 
     private static List<FitsCard> Header(OutputHdu hdu, long version, List<int> tiles, long heapBytes, bool isLong)
     {
+        // Readers in use decode compressed images of at most 3 axes: the frames of a 4-D array stand one behind the other.
+        IReadOnlyList<long> axes = hdu.Axes.Count > 3 ? [hdu.Axes[0], hdu.Axes[1], hdu.Frames] : hdu.Axes;
         List<FitsCard> cards =
         [
             .. FitsCard.Text("XTENSION", "BINTABLE", "an image in compressed tiles"),
@@ -114,12 +116,12 @@ internal sealed class ChangeMask : IDisposable
             FitsCard.Logical("ZIMAGE", true, "an image in compressed tiles"),
             .. FitsCard.Text("ZTENSION", "IMAGE", ""),
             FitsCard.Integer("ZBITPIX", 8, "a byte a sample"),
-            FitsCard.Integer("ZNAXIS", hdu.Axes.Count, ""),
+            FitsCard.Integer("ZNAXIS", axes.Count, ""),
         ];
-        for (int i = 0; i < hdu.Axes.Count; i++)
-            cards.Add(FitsCard.Integer(string.Create(CultureInfo.InvariantCulture, $"ZNAXIS{i + 1}"), hdu.Axes[i], ""));
-        for (int i = 0; i < hdu.Axes.Count; i++)
-            cards.Add(FitsCard.Integer(string.Create(CultureInfo.InvariantCulture, $"ZTILE{i + 1}"), i < 2 ? hdu.Axes[i] : 1, ""));
+        for (int i = 0; i < axes.Count; i++)
+            cards.Add(FitsCard.Integer(string.Create(CultureInfo.InvariantCulture, $"ZNAXIS{i + 1}"), axes[i], ""));
+        for (int i = 0; i < axes.Count; i++)
+            cards.Add(FitsCard.Integer(string.Create(CultureInfo.InvariantCulture, $"ZTILE{i + 1}"), i < 2 ? axes[i] : 1, ""));
         cards.AddRange(
         [
             FitsCard.Integer("ZPCOUNT", 0, ""),
