@@ -10,7 +10,7 @@ public static class PassThrough
     /// <param name="source">The stack.</param>
     /// <param name="format">Format of the result.</param>
     /// <param name="target">Path of the result.</param>
-    /// <param name="mask">Write a change mask, all of it <paramref name="flag"/>.</param>
+    /// <param name="mask">Write a change mask: <paramref name="flag"/>, and the frame's number in its first sample.</param>
     /// <param name="flag">Flags of every sample.</param>
     /// <param name="change">Changes stored samples before they are encoded, and their type.</param>
     public static ProvenanceRecord Run(
@@ -36,6 +36,7 @@ public static class PassThrough
                 ledger.Add(Row(frame, stored));
                 byte[] flags = new byte[source.Layout(frame).Length];
                 flags.AsSpan().Fill((byte)flag);
+                flags[0] = (byte)frame;
                 writer.Encode(frame, change?.Convert(source.Layout(frame), stored) ?? stored, flags, encoded);
                 writer.Write(frame, encoded);
             }

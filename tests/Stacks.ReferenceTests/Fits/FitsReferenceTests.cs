@@ -186,9 +186,12 @@ public partial class FitsReferenceTests
             added = b[len(a):]
             masks = [h for h in added if h.name == 'CHANGES']
             assert len(masks) == len(science) and len(added) == len(science) + 1
+            frame = 0
             for m, i in zip(masks, science):
                 assert isinstance(m, fits.CompImageHDU) and m.data.shape == (b[i].data.reshape((-1,) + b[i].data.shape[-2:]) if b[i].data.ndim > 3 else b[i].data).shape and m.data.dtype == np.uint8
-                assert (m.data == 8).all()
+                for plane in m.data.reshape((-1,) + m.data.shape[-2:]):
+                    assert plane.flat[0] == frame and (plane.flat[1:] == 8).all()
+                    frame += 1
             ledger = added[-1]
             assert ledger.name == 'LEDGER' and isinstance(ledger, fits.BinTableHDU)
             row = 0

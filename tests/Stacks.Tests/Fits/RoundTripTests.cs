@@ -67,7 +67,7 @@ public class RoundTripTests
     }
 
     [Theory]
-    [InlineData(SampleType.UInt16, 32768 + 32768)] // BLANK as stored in the file is shifted back
+    [InlineData(SampleType.UInt16, 32768 + 32767)] // BLANK as stored in the file is shifted back
     [InlineData(SampleType.Int8, -1)]
     public void Blank_of_shifted_types(SampleType type, int blank)
     {
