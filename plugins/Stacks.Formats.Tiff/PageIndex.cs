@@ -42,6 +42,9 @@ internal sealed class PageIndex
     /// <summary>Bytes of image data of all pages.</summary>
     public long ImageBytes { get; private set; }
 
+    /// <summary>Bytes of image data of thumbnails.</summary>
+    public long ThumbnailBytes { get; private set; }
+
     /// <summary>Tags of science pages that a result cannot carry: their type is unknown, or they point to directories below the page.</summary>
     public SortedSet<ushort> TagsNotCarried { get; } = [];
 
@@ -124,6 +127,8 @@ internal sealed class PageIndex
         if (total > file.Length || total > Array.MaxLength - (4L * layout.Segments))
             throw new StackFormatException(where, string.Create(CultureInfo.InvariantCulture, $"the page claims {total} bytes of image data"), CopyAgain);
         ImageBytes += total;
+        if (layout.Frame is null)
+            ThumbnailBytes += total;
     }
 
     private void Spend(long bytes, string where)

@@ -16,6 +16,7 @@ internal sealed class TiffReader : IStackReader
         Format = format;
         File = file;
         Index = index;
+        Metadata = new TiffMetadata(file, index);
         pageOf = [.. Enumerable.Range(0, index.Pages.Count).Where(p => index.Pages[p].Layout.Frame is not null)];
         if (pageOf.Length == 0)
             throw new StackFormatException(file.Path, "the file holds thumbnails only", "name the file they were made from");
@@ -31,16 +32,19 @@ internal sealed class TiffReader : IStackReader
     public int FrameCount => pageOf.Length;
 
     /// <inheritdoc/>
-    public IReadOnlyList<StackPart> Parts => [];
+    public IReadOnlyList<StackPart> Parts => TiffParts.Of(this);
 
     /// <inheritdoc/>
-    public IReadOnlyList<HeaderFact> Facts => [];
+    public IReadOnlyList<HeaderFact> Facts => Metadata.Facts(PageOf(0).Layout);
 
     /// <summary>The open file.</summary>
     internal TiffFile File { get; }
 
     /// <summary>Its pages.</summary>
     internal PageIndex Index { get; }
+
+    /// <summary>What the first page says about the whole file.</summary>
+    internal TiffMetadata Metadata { get; }
 
     /// <summary>Opens a file and walks over its pages.</summary>
     public static TiffReader Open(TiffFormat format, string path, ReadOptions options)
@@ -60,13 +64,13 @@ internal sealed class TiffReader : IStackReader
     }
 
     /// <inheritdoc/>
-    public FrameLayout Layout(int frame) => PageOf(frame).Layout.Frame!;
+    public FrameLayout Layout(int frame) => Metadata.Layout(PageOf(frame).Layout.Frame!, pageOf[frame]);
 
     /// <inheritdoc/>
     public HeaderNoise NoiseOf(int frame) => new(null, null, null, "TIFF has no fields for gain, read noise or pedestal", null);
 
     /// <inheritdoc/>
-    public IEnumerable<HealthFinding> CheckHealth(CancellationToken cancellation) => [];
+    public IEnumerable<HealthFinding> CheckHealth(CancellationToken cancellation) => TiffHealth.Check(this, cancellation);
 
     /// <inheritdoc/>
     public void Read(int frame, ByteBuffer raw)
@@ -119,6 +123,12 @@ internal sealed class TiffReader : IStackReader
 
     /// <inheritdoc/>
     public void Dispose() => File.Dispose();
+
+    /// <summary>Number of the page a frame stands in.</summary>
+    internal int PageNumber(int frame) => pageOf[frame];
+
+    /// <summary>True when the frame's image data are compressed.</summary>
+    internal bool IsCompressed(int frame) => PageOf(frame).Layout.Compression != Compression.None;
 
     private Page PageOf(int frame) => Index.Pages[pageOf[frame]];
 

@@ -11,6 +11,7 @@ internal sealed class TiffWriter : IStackWriter
 {
     private readonly WriteRequest request;
     private readonly TiffReader? source;
+    private readonly Dictionary<OmeImage, SampleType> newOmeTypes = [];
     private readonly PageFile stack;
     private readonly PageFile? mask;
 
@@ -21,6 +22,7 @@ internal sealed class TiffWriter : IStackWriter
         this.request = request;
         source = request.Source as TiffReader;
         CheckMeaning();
+        FindNewOmeTypes();
         List<OutputFile> files = [new(request.Path + ".partial", request.Path)];
         if (request.Mask)
         {
@@ -75,11 +77,7 @@ internal sealed class TiffWriter : IStackWriter
         int frames = request.Source.FrameCount;
         if (stack.Frames != frames)
             throw new InvalidOperationException($"{stack.Frames} of {frames} frames were written");
-        List<OutputField> first =
-        [
-            DirectoryWriter.Text(Tag.Software, $"{provenance.Program} {provenance.Version}"),
-            DirectoryWriter.Text(Tag.DateTime, request.Created.UtcDateTime.ToString("yyyy:MM:dd HH:mm:ss", CultureInfo.InvariantCulture)),
-        ];
+        List<OutputField> first = FirstPage(provenance, ledger);
         if (source is null)
             WritePlainPages(first);
         else
@@ -97,6 +95,28 @@ internal sealed class TiffWriter : IStackWriter
     {
         stack.Dispose();
         mask?.Dispose();
+    }
+
+    /// <summary>The fields of the first page that say who made the file from what: in OME-XML where there is some, else in XMP.</summary>
+    private List<OutputField> FirstPage(ProvenanceRecord provenance, IReadOnlyList<LedgerRow> ledger)
+    {
+        List<OutputField> first =
+        [
+            DirectoryWriter.Text(Tag.Software, $"{provenance.Program} {provenance.Version}"),
+            DirectoryWriter.Text(Tag.DateTime, request.Created.UtcDateTime.ToString("yyyy:MM:dd HH:mm:ss", CultureInfo.InvariantCulture)),
+        ];
+        if (source?.Metadata.Ome is { MetadataFile: null } ome)
+        {
+            string text = OmeResult.Text(ome, newOmeTypes, System.IO.Path.GetFileName(request.Path), provenance, ledger);
+            first.Add(DirectoryWriter.Text(Tag.ImageDescription, text));
+        }
+        else
+        {
+            byte[] packet = XmpPacket.Make(source?.Metadata.Xmp, provenance, ledger);
+            first.Add(new OutputField(Tag.Xmp, FieldType.Byte, packet.Length, packet));
+        }
+
+        return first;
     }
 
     private void WritePlainPages(List<OutputField> first)
@@ -165,6 +185,8 @@ internal sealed class TiffWriter : IStackWriter
     private bool MayPass4GiB(Func<int, SampleType> typeOf)
     {
         long bound = 1 << 20;
+        if (source is not null)
+            bound += (2 * (source.File.Length - Math.Min(source.File.Length, source.Index.ImageBytes))) + source.Index.ThumbnailBytes;
         for (int f = 0; f < request.Source.FrameCount; f++)
         {
             FrameLayout layout = request.Source.Layout(f);
@@ -172,8 +194,6 @@ internal sealed class TiffWriter : IStackWriter
             bound += bytes + (bytes >> 10) + 4096 + (16 * SegmentGrid.Strips(layout.Width, layout.Height, typeOf(f).Size()).Count);
         }
 
-        if (source is not null)
-            bound += 2 * (source.File.Length - Math.Min(source.File.Length, source.Index.ImageBytes));
         return bound > uint.MaxValue;
     }
 
@@ -188,6 +208,28 @@ internal sealed class TiffWriter : IStackWriter
                     string.Create(CultureInfo.InvariantCulture, $"{request.Path}, frame {f}"),
                     "the source gives its samples a scale, a zero or a missing value, for which TIFF has no fields",
                     "ask for samples = \"float32\" or \"float64\" in the recipe's [output], or for format = \"same\"");
+        }
+    }
+
+    /// <summary>Finds the images whose sample type changes. OME-XML states one type for all channels of an image.</summary>
+    private void FindNewOmeTypes()
+    {
+        Dictionary<OmeImage, SampleType> types = [];
+        for (int f = 0; source?.Metadata.Planes is { } planes && f < source.FrameCount; f++)
+        {
+            if (planes[source.PageNumber(f)] is not { } plane)
+                continue;
+            SampleType type = TypeOf(f);
+            if (!types.TryAdd(plane.Image, type) && types[plane.Image] != type)
+            {
+                throw new OutputException(
+                    string.Create(CultureInfo.InvariantCulture, $"{request.Path}, frame {f}"),
+                    $"its samples would be {type.Name()} and those of another channel {types[plane.Image].Name()}, for which OME-TIFF has no words",
+                    "ask for samples = \"same\" or \"float32\" in the recipe's [output]");
+            }
+
+            if (type != source.Layout(f).SampleType)
+                newOmeTypes[plane.Image] = type;
         }
     }
 }

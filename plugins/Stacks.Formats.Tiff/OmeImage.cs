@@ -1,0 +1,112 @@
+namespace Stacks.Formats.Tiff;
+
+/// <summary>One TiffData element.</summary>
+/// <param name="Ifd">Page of the first plane, from 0.</param>
+/// <param name="Planes">Planes it covers; null for all there are.</param>
+/// <param name="C">Channel of the first plane.</param>
+/// <param name="Z">Place along z of the first plane.</param>
+/// <param name="T">Time of the first plane.</param>
+/// <param name="OtherFile">Name (or UUID) of the file the planes stand in; null for this one.</param>
+internal readonly record struct OmeTiffData(int Ifd, int? Planes, int C, int Z, int T, string? OtherFile);
+
+/// <summary>An Image element with its Pixels.</summary>
+internal sealed class OmeImage
+{
+    /// <summary>Name, else ID.</summary>
+    public string Name { get; set; } = "";
+
+    /// <summary>When the image was taken, as written; null where it is not said.</summary>
+    public string? AcquisitionDate { get; set; }
+
+    /// <summary>DimensionOrder: XY and then C, Z and T, the fastest first.</summary>
+    public string DimensionOrder { get; set; } = "XYZCT";
+
+    /// <summary>Channels, planes along z, and times.</summary>
+    public (int C, int Z, int T) Size { get; set; } = (1, 1, 1);
+
+    /// <summary>Type of the pixels (<c>uint16</c>, <c>float</c>).</summary>
+    public string Type { get; set; } = "";
+
+    /// <summary>Where the type stands.</summary>
+    public TextSpan? TypeAt { get; set; }
+
+    /// <summary>Bits of a sample that mean something; null where it is not said.</summary>
+    public int? SignificantBits { get; set; }
+
+    /// <summary>Where they stand.</summary>
+    public TextSpan? SignificantBitsAt { get; set; }
+
+    /// <summary>Size of a pixel and time between planes, as written, with units.</summary>
+    public List<(string Label, string Value)> Scales { get; } = [];
+
+    /// <summary>Name of each channel; null where it has none.</summary>
+    public List<string?> ChannelNames { get; } = [];
+
+    /// <summary>Where the planes are.</summary>
+    public List<OmeTiffData> TiffData { get; } = [];
+}
+
+/// <summary>What a page is in its image.</summary>
+/// <param name="Image">The image.</param>
+/// <param name="C">Channel.</param>
+/// <param name="Z">Place along z.</param>
+/// <param name="T">Time.</param>
+internal readonly record struct OmePlane(OmeImage Image, int C, int Z, int T);
+
+/// <summary>Gives each page its place (OME-TIFF specification, "The TiffData element").</summary>
+internal static class OmePlanes
+{
+    /// <summary>
+    /// A TiffData element covers pages from Ifd on; their places follow DimensionOrder from (C, Z, T) on. Pages that no
+    /// element covers have none. An image without any TiffData element has its planes in order.
+    /// </summary>
+    public static OmePlane?[] Assign(IReadOnlyList<OmeImage> images, int pages)
+    {
+        OmePlane?[] planes = new OmePlane?[pages];
+
+        // Honest elements name a page once; the bound ends hostile ones.
+        long budget = 4L * pages;
+        foreach (OmeImage image in images)
+        {
+            IEnumerable<OmeTiffData> all = image.TiffData.Count > 0 ? image.TiffData : [new OmeTiffData(0, null, 0, 0, 0, null)];
+            foreach (OmeTiffData data in all.Where(d => d.OtherFile is null))
+                Assign(image, data, planes, ref budget);
+        }
+
+        return planes;
+    }
+
+    private static void Assign(OmeImage image, OmeTiffData data, OmePlane?[] planes, ref long budget)
+    {
+        (long fast, long middle, long slow) = InOrder(image, image.Size);
+        (long f, long m, long s) = InOrder(image, (data.C, data.Z, data.T));
+        Int128 total = (Int128)fast * middle * slow;
+        Int128 first = f + ((Int128)fast * (m + ((Int128)middle * s)));
+        int wanted = data.Planes ?? int.MaxValue;
+        for (int i = 0; i < wanted && first + i < total && data.Ifd + (long)i < planes.Length && budget > 0; i++, budget--)
+        {
+            Int128 place = first + i;
+            (int C, int Z, int T) at = default;
+            Set(ref at, image.DimensionOrder[2], (int)(place % fast));
+            Set(ref at, image.DimensionOrder[3], (int)(place / fast % middle));
+            Set(ref at, image.DimensionOrder[4], (int)(place / fast / middle));
+            planes[data.Ifd + i] = new OmePlane(image, at.C, at.Z, at.T);
+        }
+    }
+
+    private static void Set(ref (int C, int Z, int T) place, char axis, int index)
+    {
+        switch (axis)
+        {
+            case 'C': place.C = index; break;
+            case 'Z': place.Z = index; break;
+            default: place.T = index; break;
+        }
+    }
+
+    private static (long Fast, long Middle, long Slow) InOrder(OmeImage image, (int C, int Z, int T) by)
+    {
+        int Along(char axis) => axis switch { 'C' => by.C, 'Z' => by.Z, _ => by.T };
+        return (Along(image.DimensionOrder[2]), Along(image.DimensionOrder[3]), Along(image.DimensionOrder[4]));
+    }
+}

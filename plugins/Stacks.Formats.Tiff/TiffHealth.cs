@@ -1,0 +1,87 @@
+using System.Globalization;
+using Stacks.Abstractions;
+
+namespace Stacks.Formats.Tiff;
+
+/// <summary>Checks a file's integrity. TIFF has no checksums of its own; Deflate data have.</summary>
+internal static class TiffHealth
+{
+    private const int Named = 5;
+
+    /// <summary>All findings; compressed pages are decoded.</summary>
+    public static IEnumerable<HealthFinding> Check(TiffReader reader, CancellationToken cancellation)
+    {
+        PageIndex index = reader.Index;
+        yield return index.Loss is { } loss
+            ? new HealthFinding(true, $"the file is truncated: {loss}")
+            : new HealthFinding(false, string.Create(CultureInfo.InvariantCulture, $"all {index.Pages.Count} pages and their image data lie inside the file"));
+
+        TiffMetadata metadata = reader.Metadata;
+        if (metadata.OmeProblem is { } problem)
+            yield return new HealthFinding(true, problem);
+        if (metadata.Ome is { } ome)
+        {
+            foreach (HealthFinding finding in CheckOme(reader, ome))
+                yield return finding;
+        }
+
+        if (metadata.Xmp is { } packet && XmpPacket.Read(packet) is null)
+            yield return new HealthFinding(true, "the XMP packet of page 0 is not well-formed: a result carries it in base64 inside its own packet");
+
+        int compressed = 0;
+        int damaged = 0;
+        for (int f = 0; f < reader.FrameCount; f++)
+        {
+            cancellation.ThrowIfCancellationRequested();
+            if (!reader.IsCompressed(f))
+                continue;
+            compressed++;
+            if (Damage(reader, f) is { } damage && ++damaged <= Named)
+                yield return new HealthFinding(true, damage);
+        }
+
+        if (damaged > Named)
+            yield return new HealthFinding(true, string.Create(CultureInfo.InvariantCulture, $"{damaged - Named} more pages cannot be decoded"));
+        if (compressed > 0 && damaged == 0)
+            yield return new HealthFinding(false, string.Create(CultureInfo.InvariantCulture, $"all {compressed} compressed pages decode"));
+    }
+
+    private static IEnumerable<HealthFinding> CheckOme(TiffReader reader, OmeXml ome)
+    {
+        string folder = Path.GetDirectoryName(Path.GetFullPath(reader.Path)) ?? "";
+        foreach (string name in TiffParts.OtherFiles(ome).Take(Named))
+        {
+            string state = File.Exists(Path.Combine(folder, Path.GetFileName(name))) ? "is there but is not read" : "is missing";
+            yield return new HealthFinding(true, $"the OME set goes on in {name}, which {state}: only the planes of this file are taken");
+        }
+
+        if (reader.Metadata.Planes is not { } planes)
+            yield break;
+        int strangers = planes.Count(p => p is null);
+        if (strangers > 0)
+            yield return new HealthFinding(true, string.Create(CultureInfo.InvariantCulture, $"{strangers} pages have no place in the OME-XML: they are taken without channel, z and time"));
+        for (int f = 0; f < reader.FrameCount; f++)
+        {
+            if (planes[reader.PageNumber(f)] is { } plane && plane.Image.Type != OmeResult.TypeName(reader.Layout(f).SampleType))
+            {
+                yield return new HealthFinding(true, string.Create(CultureInfo.InvariantCulture, $"page {reader.PageNumber(f)} holds {reader.Layout(f).SampleType.Name()} samples, the OME-XML says {plane.Image.Type}: the page's own word is taken"));
+                yield break;
+            }
+        }
+    }
+
+    private static string? Damage(TiffReader reader, int frame)
+    {
+        try
+        {
+            ByteBuffer raw = new();
+            reader.Read(frame, raw);
+            reader.Decode(frame, raw.Written, new byte[reader.Layout(frame).StoredBytes]);
+            return null;
+        }
+        catch (StackFormatException error)
+        {
+            return error.Message;
+        }
+    }
+}

@@ -1,0 +1,123 @@
+using System.Globalization;
+using Stacks.Abstractions;
+
+namespace Stacks.Formats.Tiff;
+
+/// <summary>What the first page says about the whole file: OME-XML, the XMP packet, and facts for people.</summary>
+internal sealed class TiffMetadata
+{
+    private readonly TiffFile file;
+    private readonly TiffDirectory directory;
+    private readonly FileWindow window;
+
+    /// <summary>Reads the fields of the first page.</summary>
+    public TiffMetadata(TiffFile file, PageIndex index)
+    {
+        this.file = file;
+        window = new FileWindow(file);
+        directory = TiffDirectory.Read(file, window, index.Pages[0].Directory, $"{file.Path}, page 0");
+        Ome = OmeXml.Read(Text(Tag.ImageDescription), Path.GetFileName(file.Path), out string? problem);
+        OmeProblem = problem;
+        if (Ome is { MetadataFile: null })
+            Planes = OmePlanes.Assign(Ome.Images, index.Pages.Count);
+    }
+
+    /// <summary>The OME-XML; null where there is none that can be read.</summary>
+    public OmeXml? Ome { get; }
+
+    /// <summary>Why OME-XML cannot be read; null when it can or there is none.</summary>
+    public string? OmeProblem { get; }
+
+    /// <summary>Place of each page in its OME image; null where no OME-XML gives places.</summary>
+    public OmePlane?[]? Planes { get; }
+
+    /// <summary>The XMP packet's bytes; null where there is none.</summary>
+    public byte[]? Xmp => directory.Find(Tag.Xmp) is { Count: > 0 } packet && packet.ByteLength <= Array.MaxLength ? Bytes(packet) : null;
+
+    /// <summary>A page's layout with its place in the OME image.</summary>
+    public FrameLayout Layout(FrameLayout layout, int page)
+    {
+        if (Planes?[page] is not { } plane)
+            return layout;
+        OmeImage image = plane.Image;
+        return layout with
+        {
+            Channel = plane.C,
+            ChannelName = plane.C < image.ChannelNames.Count ? image.ChannelNames[plane.C] : null,
+            Z = plane.Z,
+            Time = plane.T,
+            Extension = Ome!.Images.Count > 1 ? image.Name : null,
+            SaturationStored = Saturation(layout.SampleType, image.SignificantBits),
+        };
+    }
+
+    /// <summary>Header facts for people, in a fixed order.</summary>
+    public IReadOnlyList<HeaderFact> Facts(PageLayout firstScience)
+    {
+        List<HeaderFact> facts =
+        [
+            new("container", $"{(file.IsBig ? "BigTIFF" : "classic TIFF")}, {(file.BigEndian ? "big-endian" : "little-endian")}, {firstScience.Coding}"),
+        ];
+        if (firstScience.Photometric == 0)
+            facts.Add(new("photometric interpretation", "white is zero: larger samples are darker; samples are taken as stored, not inverted"));
+        if (!firstScience.Frame!.Lattice.IsSingle)
+            facts.Add(new("colour-filter mosaic", string.Create(CultureInfo.InvariantCulture, $"repeats every {firstScience.Frame.Lattice.PeriodX} x {firstScience.Frame.Lattice.PeriodY} pixels")));
+        foreach ((string label, ushort tag) in new[] { ("made by", Tag.Software), ("date", Tag.DateTime), ("camera maker", Tag.Make), ("camera", Tag.Model) })
+        {
+            if (Text(tag) is { Length: > 0 } text)
+                facts.Add(new(label, text));
+        }
+
+        if (Resolution() is { } resolution)
+            facts.Add(new("resolution", resolution));
+        foreach (OmeImage image in Ome?.Images ?? [])
+        {
+            facts.Add(new("OME image", string.Create(CultureInfo.InvariantCulture, $"{image.Name}: {image.Size.C} channels, {image.Size.Z} along z, {image.Size.T} times")));
+            if (image.AcquisitionDate is { } date)
+                facts.Add(new("taken", date));
+            facts.AddRange(image.Scales.Select(s => new HeaderFact(s.Label, s.Value)));
+            if (image.SignificantBits is { } bits)
+                facts.Add(new("significant bits", string.Create(CultureInfo.InvariantCulture, $"{bits}")));
+            for (int c = 0; c < image.ChannelNames.Count; c++)
+                facts.Add(new(string.Create(CultureInfo.InvariantCulture, $"channel {c}"), image.ChannelNames[c] ?? "without a name"));
+        }
+
+        return facts;
+    }
+
+    private string Text(ushort tag) =>
+        directory.Find(tag) is { Type: FieldType.Ascii or FieldType.Byte or FieldType.Undefined } field && field.ByteLength <= Array.MaxLength
+            ? XmlText.Decode(Bytes(field)).Trim()
+            : "";
+
+    private byte[] Bytes(TiffField field)
+    {
+        byte[] bytes = new byte[field.ByteLength];
+        file.Read(field.ValueAt, bytes);
+        return bytes;
+    }
+
+    /// <summary>Saturation is the largest number that fits: 2^bits - 1, one bit less in signed types.</summary>
+    private static double? Saturation(SampleType type, int? significantBits)
+    {
+        if (!type.IsInteger())
+            return null;
+        bool signed = type.Minimum() < 0;
+        return significantBits is { } bits && bits >= 1 && bits < 8 * type.Size() ? Math.Pow(2, signed ? bits - 1 : bits) - 1 : type.Maximum();
+    }
+
+    private string? Resolution()
+    {
+        if (directory.Find(Tag.XResolution) is not { Type: FieldType.Rational, Count: > 0 } x
+            || directory.Find(Tag.YResolution) is not { Type: FieldType.Rational, Count: > 0 } y)
+            return null;
+        string unit = directory.Number(window, Tag.ResolutionUnit, 2) switch { 2 => "pixels per inch", 3 => "pixels per cm", _ => "pixels per unit" };
+        return string.Create(CultureInfo.InvariantCulture, $"{Ratio(x):R} x {Ratio(y):R} {unit}");
+    }
+
+    private double Ratio(TiffField field)
+    {
+        ReadOnlySpan<byte> bytes = window.At(field.ValueAt, 8);
+        return (double)file.Number(bytes[..4]) / file.Number(bytes[4..]);
+    }
+}

@@ -1,0 +1,151 @@
+using Stacks.Abstractions;
+using Stacks.TestSupport;
+using Xunit;
+
+namespace Stacks.Tests.Tiff;
+
+/// <summary>Every sample type, layout, compression and predictor in every container, against the slow writer.</summary>
+public sealed class ReadTests
+{
+    public static TheoryData<bool, bool> Containers => new() { { false, false }, { false, true }, { true, false }, { true, true } };
+
+    [Theory]
+    [MemberData(nameof(Containers))]
+    public void Every_type_layout_compression_and_predictor_is_read(bool big, bool bigEndian)
+    {
+        using TemporaryFolder folder = new();
+        foreach ((SampleType type, int bits, int format) in TinyFiles.Types)
+        {
+            List<TinyPage> pages = [];
+            foreach (int compression in (int[])[1, 5, 8, 32946])
+            {
+                foreach (int predictor in format == 3 ? (int[])[1, 2, 3] : [1, 2])
+                {
+                    if (compression == 1 && predictor != 1)
+                        continue;
+                    TinyPage page = TinyFiles.Page(21, 11, bits, format, pages.Count) with { Compression = compression, Predictor = predictor };
+                    pages.Add(page);
+                    pages.Add(page with { Tile = (16, 16) });
+                    pages.Add(page with { RowsPerStrip = 100 });
+                }
+            }
+
+            using IStackReader reader = TinyFiles.Open(folder, TinyTiff.Build(big, bigEndian, [.. pages]));
+            Assert.Equal(pages.Count, reader.FrameCount);
+            for (int f = 0; f < pages.Count; f++)
+            {
+                Assert.Equal((21, 11, type), (reader.Layout(f).Width, reader.Layout(f).Height, reader.Layout(f).SampleType));
+                Assert.True(pages[f].Samples.AsSpan().SequenceEqual(TiffLoop.Samples(reader, f)), $"{type}, compression {pages[f].Compression}, predictor {pages[f].Predictor}, tile {pages[f].Tile}");
+            }
+        }
+    }
+
+    /// <summary>TIFF 6.0, section 14: the predictor belongs to the compression; a field left from elsewhere means nothing.</summary>
+    [Fact]
+    public void Predictor_without_compression_is_ignored()
+    {
+        using TemporaryFolder folder = new();
+        TinyPage page = TinyFiles.Page() with { Extra = [new(317, 3, 2)] };
+        using IStackReader reader = TinyFiles.Open(folder, TinyTiff.Build(false, false, page));
+        Assert.Equal(page.Samples, TiffLoop.Samples(reader, 0));
+    }
+
+    [Fact]
+    public void Missing_byte_counts_are_known_without_compression()
+    {
+        using TemporaryFolder folder = new();
+        byte[] bytes = TinyTiff.Build(false, false, TinyFiles.Page());
+        int entry = bytes.AsSpan().IndexOf((ReadOnlySpan<byte>)[0x17, 0x01, 4, 0]);
+        bytes[entry] = 0x16;
+        bytes[entry + 1] = 0x7F;
+        using IStackReader reader = TinyFiles.Open(folder, bytes);
+        Assert.Equal(TinyFiles.Page().Samples, TiffLoop.Samples(reader, 0));
+    }
+
+    [Fact]
+    public void Saturation_and_step_follow_the_type()
+    {
+        using TemporaryFolder folder = new();
+        using IStackReader reader = TinyFiles.Open(folder, TinyTiff.Build(
+            false, false, [.. TinyFiles.Types.Select(t => TinyFiles.Page(bits: t.Bits, format: t.Format) with { Extra = [new(281, 3, 100)] })]));
+        double?[] expected = [255, 127, 65535, 32767, 4294967295, 2147483647, 18446744073709551615, 9223372036854775807, null, null, null];
+        for (int f = 0; f < expected.Length; f++)
+        {
+            Assert.Equal(expected[f], reader.Layout(f).SaturationStored);
+            Assert.Equal(expected[f] is null ? 0 : 1, reader.Layout(f).QuantisationStep);
+        }
+    }
+
+    /// <summary>TIFF/EP (ISO 12234-2): CFARepeatPatternDim is rows, then columns.</summary>
+    [Fact]
+    public void Colour_filter_mosaic_gives_the_lattice()
+    {
+        using TemporaryFolder folder = new();
+        using IStackReader reader = TinyFiles.Open(folder, TinyTiff.Build(
+            false,
+            true,
+            TinyFiles.Page() with { Extra = [new(262, 3, 32803), new(33421, 3, 4, 2), new(33422, 1, 0, 1, 2, 1, 0, 1, 2, 1)] },
+            TinyFiles.Page() with { Extra = [new(262, 3, 32803)] },
+            TinyFiles.Page()));
+        Assert.Equal(new Lattice(2, 4), reader.Layout(0).Lattice);
+        Assert.Equal(new Lattice(2, 2), reader.Layout(1).Lattice);
+        Assert.True(reader.Layout(2).Lattice.IsSingle);
+    }
+
+    [Fact]
+    public void White_is_zero_is_read_as_stored_and_said()
+    {
+        using TemporaryFolder folder = new();
+        TinyPage page = TinyFiles.Page() with { Extra = [new(262, 3, 0)] };
+        using IStackReader reader = TinyFiles.Open(folder, TinyTiff.Build(false, false, page));
+        Assert.Equal(page.Samples, TiffLoop.Samples(reader, 0));
+        Assert.Contains(reader.Facts, f => f.Value.Contains("white is zero", StringComparison.Ordinal));
+    }
+
+    [Fact]
+    public void Alike_pages_share_their_layout_and_40000_pages_are_found()
+    {
+        // Beyond 32,767 pages a short page number would overflow.
+        using TemporaryFolder folder = new();
+        byte[] bytes = ManyPages(40000);
+        using IStackReader reader = TinyFiles.Open(folder, bytes);
+        Assert.Equal(40000, reader.FrameCount);
+        Assert.Same(reader.Layout(0), reader.Layout(39999));
+        Assert.Equal([0x3F, 0x9C], TiffLoop.Samples(reader, 39999));
+    }
+
+    [Fact]
+    public void Concurrent_reads_give_the_same_samples()
+    {
+        using TemporaryFolder folder = new();
+        TinyPage[] pages = [.. Enumerable.Range(0, 40).Select(i => TinyFiles.Page(33, 29, seed: i) with { Compression = i % 2 == 0 ? 8 : 5, Predictor = 2 })];
+        using IStackReader reader = TinyFiles.Open(folder, TinyTiff.Build(false, true, pages));
+        Parallel.For(0, 400, i => Assert.Equal(pages[i % 40].Samples, TiffLoop.Samples(reader, i % 40)));
+    }
+
+    /// <summary>Pages of 1 x 1 sample that hold their own number.</summary>
+    private static byte[] ManyPages(int count)
+    {
+        MemoryStream file = new();
+        BinaryWriter writer = new(file);
+        writer.Write("II*\0"u8);
+        writer.Write(8);
+        for (int i = 0; i < count; i++)
+        {
+            (int Tag, int Value)[] fields = [(256, 1), (257, 1), (258, 16), (262, 1), (273, (int)file.Position + 2 + (7 * 12) + 4), (278, 1), (279, 2)];
+            writer.Write((short)fields.Length);
+            foreach ((int tag, int value) in fields)
+            {
+                writer.Write((short)tag);
+                writer.Write((short)4);
+                writer.Write(1);
+                writer.Write(value);
+            }
+
+            writer.Write(i == count - 1 ? 0 : (int)file.Position + 6);
+            writer.Write((ushort)i);
+        }
+
+        return file.ToArray();
+    }
+}
