@@ -8,11 +8,14 @@ namespace Stacks.Formats.Tiff;
 internal static class Deflate
 {
     /// <summary>
-    /// Decodes until the output is full, and checks the data's own checksum where they end there. The stream object of
-    /// the base library cannot be used twice: one is made for each segment.
+    /// Decodes to the end of the data, whose own checksum is then checked. The stream object of the base library cannot be
+    /// used twice: one is made for each segment.
     /// </summary>
+    /// <param name="source">Compressed bytes.</param>
+    /// <param name="output">Receives the bytes.</param>
+    /// <param name="longest">Bytes the data may hold: some writers fill the last strip with rows below the page.</param>
     /// <returns>Null, or what is wrong with the data.</returns>
-    public static unsafe string? Decode(ReadOnlySpan<byte> source, Span<byte> output)
+    public static unsafe string? Decode(ReadOnlySpan<byte> source, Span<byte> output, int longest)
     {
         fixed (byte* start = source)
         {
@@ -23,11 +26,14 @@ internal static class Deflate
                 int done = inflater.ReadAtLeast(output, output.Length, throwOnEndOfStream: false);
                 if (done < output.Length)
                     return string.Create(CultureInfo.InvariantCulture, $"the Deflate data end after {done} of {output.Length} bytes");
-                inflater.ReadByte();
-                return null;
+                Span<byte> below = stackalloc byte[1024];
+                for (int got = -1; got != 0 && done <= longest; done += got)
+                    got = inflater.Read(below);
+                return done <= longest ? null : "the Deflate data are longer than the page";
             }
-            catch (InvalidDataException)
+            catch (Exception error) when (error is InvalidDataException or ArgumentOutOfRangeException)
             {
+                // The base library throws the second where damaged data end in the middle of its look-ahead.
                 return "the Deflate data are damaged";
             }
         }

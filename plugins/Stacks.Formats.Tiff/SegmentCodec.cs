@@ -86,8 +86,10 @@ internal static class SegmentCodec
             return null;
         }
 
-        string? problem = layout.Compression == Compression.Lzw ? Lzw.Decode(source, into) : Deflate.Decode(source, into);
         int rowBytes = (int)layout.Grid.RowBytes;
+        string? problem = layout.Compression == Compression.Lzw
+            ? Lzw.Decode(source, into)
+            : Deflate.Decode(source, into, rowBytes * layout.Grid.SegmentHeight);
         if (layout.Predictor == 3)
             FloatingPointPredictor.Undo(into, rowBytes, size);
         else if (bigEndian)

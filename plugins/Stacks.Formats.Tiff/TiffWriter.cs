@@ -32,7 +32,8 @@ internal sealed class TiffWriter : IStackWriter
 
         Files = files;
         bool bigEndian = source is { File.BigEndian: true };
-        stack = new PageFile(files[0].Partial, bigEndian, source is { File.IsBig: true } || MayPass4GiB(TypeOf), request.Compress);
+        IsBig = source is { File.IsBig: true } || MayPass4GiB(TypeOf);
+        stack = new PageFile(files[0].Partial, bigEndian, IsBig, request.Compress);
         try
         {
             if (request.Mask)
@@ -47,6 +48,9 @@ internal sealed class TiffWriter : IStackWriter
 
     /// <inheritdoc/>
     public IReadOnlyList<OutputFile> Files { get; }
+
+    /// <summary>True when the stack is written as BigTIFF.</summary>
+    internal bool IsBig { get; }
 
     /// <inheritdoc/>
     public void Encode(int frame, Span<byte> stored, ReadOnlySpan<byte> flags, EncodedFrame encoded)
