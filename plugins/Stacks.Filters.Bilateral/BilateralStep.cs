@@ -1,5 +1,6 @@
 using System.Numerics;
 using Stacks.Abstractions;
+using Stacks.Imaging;
 
 namespace Stacks.Filters.Bilateral;
 
@@ -11,13 +12,16 @@ namespace Stacks.Filters.Bilateral;
 /// 0 or more. What p gives q, q gets from p: w is symmetric to the bit, so the total changes by rounding alone.
 /// </summary>
 internal sealed class BilateralStep<T>(
-    SpatialKernel kernel, double? rangeSigma, bool conserveFlux, IReadOnlyList<ResolvedParameter> resolved, bool vectors = true)
+    SpatialKernel kernel, double? rangeSigma, bool conserveFlux, IReadOnlyList<ResolvedParameter> resolved)
     : IFilterStep<T>
     where T : unmanaged, IBinaryFloatingPointIeee754<T>
 {
     private const int Rounds = 3;
 
     private delegate void RowWork(int y, Span<double> weights, Span<double> exchanges);
+
+    /// <summary>Lanes to compute with; results are the same bits.</summary>
+    public int Lanes { get; init; } = DoubleLanes.Widest;
 
     /// <summary>Sums that follow one on another: one, or the row sums, the rounds, R and the exchange.</summary>
     private int Passes => conserveFlux ? Rounds + 3 : 1;
@@ -53,7 +57,7 @@ internal sealed class BilateralStep<T>(
 
         ForEachRow(context, (y, weights, exchanges) =>
         {
-            PixelSums.OfRow(kernel, planes, perSquare, y, weights, exchanges, vectors);
+            DoubleLanes.Run(new PixelSums(kernel, planes, perSquare, y, weights, exchanges), kernel.Width, Lanes);
             ReadOnlySpan<double> values = planes.Inner(planes.Values, y), factors = planes.Inner(planes.Factors, y);
             ReadOnlySpan<T> samples = input.Row(y);
             Span<T> results = output.Row(y);
@@ -74,7 +78,7 @@ internal sealed class BilateralStep<T>(
         {
             ForEachRow(context, (y, weights, exchanges) =>
             {
-                PixelSums.OfRow(kernel, planes, perSquare, y, weights, exchanges, vectors);
+                DoubleLanes.Run(new PixelSums(kernel, planes, perSquare, y, weights, exchanges), kernel.Width, Lanes);
                 ReadOnlySpan<double> factors = planes.Inner(planes.Factors, y);
                 Span<double> results = planes.Inner(next.Factors, y);
                 for (int x = 0; x < factors.Length; x++)

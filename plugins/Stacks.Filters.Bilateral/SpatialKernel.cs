@@ -6,7 +6,8 @@ namespace Stacks.Filters.Bilateral;
 /// </summary>
 internal sealed class SpatialKernel
 {
-    private readonly int[] firstOfRow;
+    private readonly int[] offsets;
+    private readonly double[] exponents;
 
     /// <summary>A kernel for frames of one shape.</summary>
     /// <param name="sigma">ss in samples.</param>
@@ -21,23 +22,17 @@ internal sealed class SpatialKernel
         Height = height;
         Stride = checked(width + (2 * RadiusX));
 
-        List<int> offsets = [];
-        List<double> exponents = [];
-        firstOfRow = new int[(2 * RadiusY) + 2];
+        offsets = new int[((2 * RadiusX) + 1) * ((2 * RadiusY) + 1)];
+        exponents = new double[offsets.Length];
+        int next = 0;
         for (int dy = -RadiusY; dy <= RadiusY; dy++)
         {
-            firstOfRow[dy + RadiusY] = offsets.Count;
-            for (int dx = -RadiusX; dx <= RadiusX; dx++)
+            for (int dx = -RadiusX; dx <= RadiusX; dx++, next++)
             {
-                double squared = ((double)dx * dx) + ((double)dy * dy);
-                offsets.Add((dy * Stride) + dx);
-                exponents.Add(squared * Math.Log2(Math.E) / (2 * sigma * sigma));
+                offsets[next] = (dy * Stride) + dx;
+                exponents[next] = (((double)dx * dx) + ((double)dy * dy)) * Math.Log2(Math.E) / (2 * sigma * sigma);
             }
         }
-
-        firstOfRow[^1] = offsets.Count;
-        Offsets = [.. offsets];
-        Exponents = [.. exponents];
     }
 
     /// <summary>Frame width.</summary>
@@ -55,13 +50,15 @@ internal sealed class SpatialKernel
     /// <summary>Samples in a row of a padded plane: the frame's width and <see cref="RadiusX"/> on either side.</summary>
     public int Stride { get; }
 
-    /// <summary>Distance in a padded plane from p to each q.</summary>
-    public int[] Offsets { get; }
+    /// <summary>Distances in a padded plane from p in row <paramref name="y"/> to each q in the frame's rows.</summary>
+    public ReadOnlySpan<int> OffsetsOfRow(int y) => offsets.AsSpan(InFrame(y));
 
-    /// <summary>|p-q|^2 log2(e) / 2 ss^2 for each q: its weight in space is 2 to minus this.</summary>
-    public double[] Exponents { get; }
+    /// <summary>|p-q|^2 log2(e) / 2 ss^2 for the same q: the weight in space is 2 to minus this.</summary>
+    public ReadOnlySpan<double> ExponentsOfRow(int y) => exponents.AsSpan(InFrame(y));
 
-    /// <summary>The range [first, end) of places that lie in the frame when p is in row <paramref name="y"/>.</summary>
-    public (int First, int End) PlacesOfRow(int y) =>
-        (firstOfRow[Math.Max(0, RadiusY - y)], firstOfRow[Math.Min(2 * RadiusY, Height - 1 - y + RadiusY) + 1]);
+    private Range InFrame(int y)
+    {
+        int rowLength = (2 * RadiusX) + 1;
+        return (Math.Max(0, RadiusY - y) * rowLength)..((Math.Min(RadiusY, Height - 1 - y) + RadiusY + 1) * rowLength);
+    }
 }
