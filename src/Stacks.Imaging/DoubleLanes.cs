@@ -72,6 +72,9 @@ public readonly struct DoubleLanes512(Vector512<double> lanes) : IDoubleLanes<Do
 
     /// <inheritdoc/>
     public static DoubleLanes512 operator *(DoubleLanes512 a, DoubleLanes512 b) => new(a.lanes * b.lanes);
+
+    /// <inheritdoc/>
+    public static DoubleLanes512 operator /(DoubleLanes512 a, DoubleLanes512 b) => new(a.lanes / b.lanes);
 }
 
 /// <summary>256-bit form.</summary>
@@ -106,6 +109,9 @@ public readonly struct DoubleLanes256(Vector256<double> lanes) : IDoubleLanes<Do
 
     /// <inheritdoc/>
     public static DoubleLanes256 operator *(DoubleLanes256 a, DoubleLanes256 b) => new(a.lanes * b.lanes);
+
+    /// <inheritdoc/>
+    public static DoubleLanes256 operator /(DoubleLanes256 a, DoubleLanes256 b) => new(a.lanes / b.lanes);
 }
 
 /// <summary>128-bit form.</summary>
@@ -140,6 +146,9 @@ public readonly struct DoubleLanes128(Vector128<double> lanes) : IDoubleLanes<Do
 
     /// <inheritdoc/>
     public static DoubleLanes128 operator *(DoubleLanes128 a, DoubleLanes128 b) => new(a.lanes * b.lanes);
+
+    /// <inheritdoc/>
+    public static DoubleLanes128 operator /(DoubleLanes128 a, DoubleLanes128 b) => new(a.lanes / b.lanes);
 }
 
 /// <summary>The scalar form: one lane.</summary>
@@ -174,4 +183,7 @@ public readonly struct DoubleLane(double lane) : IDoubleLanes<DoubleLane>
 
     /// <inheritdoc/>
     public static DoubleLane operator *(DoubleLane a, DoubleLane b) => new(a.lane * b.lane);
+
+    /// <inheritdoc/>
+    public static DoubleLane operator /(DoubleLane a, DoubleLane b) => new(a.lane / b.lane);
 }

@@ -34,6 +34,9 @@ public interface IDoubleLanes<TSelf>
 
     /// <summary>Product.</summary>
     static abstract TSelf operator *(TSelf a, TSelf b);
+
+    /// <summary>Quotient.</summary>
+    static abstract TSelf operator /(TSelf a, TSelf b);
 }
 
 /// <summary>What is computed for neighbouring pixels of a row at once.</summary>

@@ -8,7 +8,7 @@ namespace Stacks.Imaging;
 /// <summary>Makes <see cref="Windows{T}"/>.</summary>
 public static class Windows
 {
-    /// <summary>Bytes that <see cref="Of{T}"/> rents at most.</summary>
+    /// <summary>Bytes that one plane with its border rents at most.</summary>
     public static long ScratchBytes<T>(int width, int height, int radius)
         where T : unmanaged =>
         ((long)width + (2 * radius)) * ((long)height + (2 * radius)) * (Unsafe.SizeOf<T>() + 1);
@@ -47,6 +47,28 @@ public static class Windows
             }
         });
         return new Windows<T>(samples, outsiders, radius);
+    }
+
+    /// <summary>Makes a bordered plane of samples that are computed row by row; all of them take part.</summary>
+    /// <param name="width">Samples in a row.</param>
+    /// <param name="height">Rows.</param>
+    /// <param name="makeRow">Computes row <c>y</c> of the plane into the span; called again for rows that the border repeats.</param>
+    /// <param name="radius">Largest radius of a window, 0 or more.</param>
+    /// <param name="scratch">Gives the memory, which lives as long as the step.</param>
+    /// <param name="bands">Threads.</param>
+    public static Windows<T> Computed<T>(int width, int height, Action<int, Span<T>> makeRow, int radius, IScratch scratch, IRowBands bands)
+        where T : unmanaged, INumber<T>
+    {
+        Plane<T> samples = scratch.Rent<T>(checked(width + (2 * radius)), checked(height + (2 * radius)));
+        bands.ForEach(samples.Height, (first, end) =>
+        {
+            for (int y = first; y < end; y++)
+            {
+                makeRow(Reflection.Index(y - radius, height), samples.Row(y).Slice(radius, width));
+                Extend(samples.Row(y), radius);
+            }
+        });
+        return new Windows<T>(samples, null, radius);
     }
 
     private static bool Any(ReadOnlySpan<SampleFlags> flags, SampleFlags wanted)
