@@ -3,10 +3,9 @@ using Xunit;
 namespace Stacks.Tests.Samples;
 
 /// <summary>What adaptive-median does to four-chips.fits, each extension by the noise of its own header, against the truth.</summary>
-public sealed class FourChipsTests(FourChipsTests.Run run) : IClassFixture<FourChipsTests.Run>
+[Collection(SampleRuns.Name)]
+public sealed class FourChipsTests(FourChipsRun run)
 {
-    public sealed class Run() : SampleRun("four-chips.recipe.toml", "four-chips.fits", "four-chips.impulses.tsv");
-
     [Theory]
     [InlineData("isolated", 0.99, 300)]
     [InlineData("track", 0.99, 600)]

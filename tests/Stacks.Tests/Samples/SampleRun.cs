@@ -12,6 +12,7 @@ public abstract class SampleRun : IDisposable
     {
         ToolResult result = Tool.Stacks("run", Truth.Path(recipe), Truth.Path(stack), "-o", folder.Path);
         Assert.True(result.ExitCode == 0, result.Output + result.Error);
+        Printed = result.Output.Replace(folder.Path, "out", StringComparison.Ordinal).Replace(Checkout.Root + "/", "", StringComparison.Ordinal);
         Before = Planes(Truth.Path(stack));
         // The change mask may stand behind the frames as further planes of the file.
         After = Planes(folder.File(stack))[..Before.Count];
@@ -20,6 +21,9 @@ public abstract class SampleRun : IDisposable
         foreach (PlantedPixel pixel in Planted)
             Struck[pixel.Frame].Add((pixel.X, pixel.Y));
     }
+
+    /// <summary>What the host printed, as it reads when it is called in the checkout with <c>-o out</c>.</summary>
+    internal string Printed { get; }
 
     internal List<PlainPlane> Before { get; }
 
@@ -83,15 +87,15 @@ public abstract class SampleRun : IDisposable
             && Aperture(source).All(p => !Struck[source.Frame].Contains(p));
     }
 
-    /// <summary>The pixels whose centres are within 5 px of a source.</summary>
-    internal static IEnumerable<(int X, int Y)> Aperture(PlantedSource source) =>
-        Square(source, 6).Where(p => ((p.X - source.X) * (p.X - source.X)) + ((p.Y - source.Y) * (p.Y - source.Y)) <= 25);
+    /// <summary>The pixels whose centres are within a radius of a source.</summary>
+    internal static IEnumerable<(int X, int Y)> Aperture(PlantedSource source, double radius = 5) =>
+        Square(source, 6).Where(p => ((p.X - source.X) * (p.X - source.X)) + ((p.Y - source.Y) * (p.Y - source.Y)) <= radius * radius);
 
     /// <summary>The pixel of a source's centre and its eight neighbours.</summary>
     internal static IEnumerable<(int X, int Y)> Core(PlantedSource source) => Square(source, 1);
 
-    /// <summary>The sum over a source's 5-px aperture.</summary>
-    internal static double FivePixelSum(PlainPlane plane, PlantedSource source) => Aperture(source).Sum(p => plane[p.X, p.Y]);
+    /// <summary>The sum over a source's aperture.</summary>
+    internal static double Sum(PlainPlane plane, PlantedSource source, double radius = 5) => Aperture(source, radius).Sum(p => plane[p.X, p.Y]);
 
     private static IEnumerable<(int X, int Y)> Square(PlantedSource source, int half) =>
         from y in Enumerable.Range(source.Row - half, (2 * half) + 1)
@@ -100,3 +104,29 @@ public abstract class SampleRun : IDisposable
 
     private static List<PlainPlane> Planes(string path) => path.EndsWith(".tif", StringComparison.Ordinal) ? PlainTiff.Read(path) : PlainFits.Read(path);
 }
+
+/// <summary>Each sample stack is run once for all tests that ask about it.</summary>
+[CollectionDefinition(Name)]
+public sealed class SampleRuns : ICollectionFixture<NightFieldRun>, ICollectionFixture<SmoothNightFieldRun>,
+    ICollectionFixture<WanderingCellsRun>, ICollectionFixture<FourChipsRun>
+{
+    public const string Name = "sample runs";
+}
+
+public sealed class NightFieldRun() : SampleRun("night-field.recipe.toml", "night-field.fits", "night-field.impulses.tsv")
+{
+    /// <summary>Every star where it stands in every frame.</summary>
+    internal List<PlantedSource> Stars { get; } =
+    [
+        .. from frame in Truth.Table("night-field.frames.tsv")
+           from star in Truth.Table("night-field.stars.tsv")
+           select new PlantedSource(
+               frame.Integer("frame"), star.Number("flux_electrons"), star.Number("x_px") + frame.Number("dx_px"), star.Number("y_px") + frame.Number("dy_px")),
+    ];
+}
+
+public sealed class SmoothNightFieldRun() : SampleRun("night-field-smooth.recipe.toml", "night-field.fits", "night-field.impulses.tsv");
+
+public sealed class WanderingCellsRun() : SampleRun("wandering-cells.recipe.toml", "wandering-cells.ome.tif", "wandering-cells.impulses.tsv");
+
+public sealed class FourChipsRun() : SampleRun("four-chips.recipe.toml", "four-chips.fits", "four-chips.impulses.tsv");
