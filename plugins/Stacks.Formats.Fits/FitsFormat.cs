@@ -16,6 +16,9 @@ public sealed class FitsFormat : IStackFormat
     /// <inheritdoc/>
     public string Extension => ".fits";
 
+    /// <inheritdoc/>
+    public IReadOnlyList<string> Endings { get; } = [".fits", ".fit", ".fts"];
+
     /// <summary>True for a file whose first card is SIMPLE, and for one that would be so if it were not gzipped.</summary>
     public bool Recognises(ReadOnlySpan<byte> start) =>
         start.StartsWith(FirstKeyword) || (start.StartsWith(GzipMagic) && Inflated(start).StartsWith(FirstKeyword));

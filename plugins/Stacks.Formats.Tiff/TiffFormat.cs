@@ -15,6 +15,9 @@ public sealed class TiffFormat : IStackFormat
     public string Extension => ".tif";
 
     /// <inheritdoc/>
+    public IReadOnlyList<string> Endings { get; } = [".tif", ".tiff"];
+
+    /// <inheritdoc/>
     public bool Recognises(ReadOnlySpan<byte> start) => HasSignature(start);
 
     /// <inheritdoc/>

@@ -20,7 +20,7 @@ internal sealed class LineProgress(int count, bool verbose) : FaultLines(verbose
         lastTime = TimeSpan.Zero;
         lastFrames = 0;
         label = (count > 1 ? $"[{index + 1}/{count}] " : "") + Path.GetFileName(plan.Reader.Path);
-        Console.Error.WriteLine($"{label}: {plan.Reader.FrameCount} frames");
+        Console.Error.WriteLine($"{label}: {Describe.Frames(plan.Reader.FrameCount)}");
     }
 
     /// <inheritdoc/>

@@ -101,7 +101,11 @@ internal static class RunReport
         NightEntry[] failed = [.. entries.Where(e => e.Fault is not null)];
         Console.WriteLine($"{Describe.Count(entries.Count, "stack")}: {made} made, {before} done before, {failed.Length} failed");
         foreach (NightEntry entry in failed)
-            Line("failed", $"{entry.Item.Input} (exit code {entry.ExitCode.ToString(CultureInfo.InvariantCulture)}): {ErrorLine.Text(entry.Fault!)}");
+        {
+            string text = ErrorLine.Text(entry.Fault!);
+            string which = text.StartsWith(entry.Item.Input, StringComparison.Ordinal) ? "" : entry.Item.Input + ": ";
+            Line("failed", string.Create(CultureInfo.InvariantCulture, $"{which}{text} (exit code {entry.ExitCode})"));
+        }
     }
 
     private static string UnitOf(RunPlan plan) => string.Join(" | ", plan.Kinds.Select(k => k.Layout.Unit).Distinct());

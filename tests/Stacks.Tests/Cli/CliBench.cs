@@ -1,5 +1,5 @@
-using Stacks.TestSupport;
 using Stacks.Tests.Catalogue;
+using Stacks.TestSupport;
 using Xunit;
 
 namespace Stacks.Tests.Cli;

@@ -1,7 +1,7 @@
 using Stacks.Abstractions;
 using Stacks.Pipeline;
-using Stacks.TestSupport;
 using Stacks.Tests.Engine;
+using Stacks.TestSupport;
 using Xunit;
 
 namespace Stacks.Tests.Plans;
