@@ -51,6 +51,8 @@ public sealed class PluginCatalogueTests : IDisposable
     {
         string place = Install("plugins", "Stacks.TestPlugin");
         File.Copy(typeof(IFilterPlugin).Assembly.Location, Path.Combine(place, "Stacks.Abstractions.dll"));
+        // Without the list of its dependencies, a plugin's dependencies are all files in its folder.
+        File.Delete(Path.Combine(place, "Stacks.TestPlugin.deps.json"));
 
         CatalogueFilter filter = Assert.Single(PluginCatalogue.Load(folder.Path, []).Filters);
 
