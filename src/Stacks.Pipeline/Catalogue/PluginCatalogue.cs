@@ -69,7 +69,7 @@ public sealed class PluginCatalogue
                     formats.Add(new CatalogueFormat((IStackFormat)Activator.CreateInstance(type)!, origin));
             }
 
-            if (filters.Count + formats.Count == before && assembly.GetExportedTypes().Length > 0)
+            if (filters.Count + formats.Count == before)
                 throw new PluginException(file, "holds no filter and no format", "remove it from the plugin folder, or build it against this program's contracts");
         }
         catch (Exception e) when (e is not StacksException and not OutOfMemoryException)
