@@ -9,14 +9,22 @@ namespace Stacks.Formats.Fits;
 internal static class CameraKeywords
 {
     /// <summary>Electrons per ADU, the surer ones first: GAIN is a camera's setting on many cameras.</summary>
-    private static readonly string[] GainKeywords = ["EGAIN", "ATODGAIN", "GAIN"];
+    public static IReadOnlyList<string> GainKeywords { get; } = ["EGAIN", "ATODGAIN", "GAIN"];
 
     /// <summary>Electrons rms.</summary>
-    private static readonly string[] ReadNoiseKeywords = ["RDNOISE", "READNOIS", "READNSE", "RDNOIS", "ENOISE", "RON"];
+    public static IReadOnlyList<string> ReadNoiseKeywords { get; } = ["RDNOISE", "READNOIS", "READNSE", "RDNOIS", "ENOISE", "RON"];
+
+    /// <summary>The value at which the detector saturates, in value units.</summary>
+    public static IReadOnlyList<string> SaturationKeywords { get; } = ["SATURATE", "SATLEVEL", "SATURLEV", "SATUR"];
 
     /// <summary>Last words of hierarchical keywords that give a figure for each output amplifier.</summary>
     private const string OutputGain = " CONAD";
     private const string OutputReadNoise = " RON";
+
+    /// <summary>True for a figure of 0 or below that stands for "not known" (common practice).</summary>
+    public static bool IsUnknown(string keyword, string value) =>
+        (GainKeywords.Contains(keyword) || ReadNoiseKeywords.Contains(keyword) || SaturationKeywords.Contains(keyword))
+        && double.TryParse(value, NumberStyles.Float, CultureInfo.InvariantCulture, out double number) && number <= 0;
 
     /// <summary>Gain, read noise and pedestal of a frame; reads its overscan when BIASSEC names one.</summary>
     public static HeaderNoise NoiseOf(FitsReader reader, int frame)
@@ -54,8 +62,8 @@ internal static class CameraKeywords
         return gain;
     }
 
-    /// <summary>The first keyword with a value above 0: 0 and below stand for "not known" (common practice).</summary>
-    private static double? Positive(FitsHeader header, string[] keywords, List<string> origin)
+    /// <summary>The first keyword with a value above 0.</summary>
+    private static double? Positive(FitsHeader header, IReadOnlyList<string> keywords, List<string> origin)
     {
         foreach (string keyword in keywords)
         {

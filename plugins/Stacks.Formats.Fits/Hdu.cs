@@ -110,6 +110,9 @@ internal sealed record Hdu
     /// <summary>Bytes of one plane; images only.</summary>
     public long PlaneBytes => Axes[0] * Axes[1] * (Math.Abs(BitPix) / 8);
 
+    /// <summary>Planes that the header promises; images of two and more axes only.</summary>
+    public long PromisedPlanes => DataBytes / PlaneBytes;
+
     /// <summary>Whole planes in the file; images of two and more axes only.</summary>
     public long Planes => PresentBytes / PlaneBytes;
 

@@ -17,10 +17,7 @@ internal static class HduRoles
     private static readonly string[] ErrorPrefixes = ["VAR_", "ERR_", "SIGMA_", "STAT_"];
     private static readonly string[] MaskNames = ["DQ", "MASK", "QUALITY", "QUAL", "BPM", "BADPIX", "FLAG", "FLAGS"];
 
-    /// <summary>Name by which the primary image is asked for when it has no EXTNAME.</summary>
-    private const string PrimaryName = "PRIMARY";
-
-    /// <summary>What an image's name says it is. An integer image of a mask's name is a mask.</summary>
+    /// <summary>What an image's name says it is. A mask holds integers.</summary>
     private static HduRole ByName(Hdu hdu)
     {
         if (hdu.Kind != HduKind.Image)
@@ -31,16 +28,20 @@ internal static class HduRoles
             return HduRole.Science;
         if (ErrorNames.Any(n => name.Equals(n, NoCase)) || ErrorPrefixes.Any(p => name.StartsWith(p, NoCase)))
             return HduRole.ErrorPlane;
-        return hdu.BitPix > 0 && MaskNames.Any(n => name.Equals(n, NoCase)) ? HduRole.QualityMask : HduRole.Science;
+        if (MaskNames.Any(n => name.Equals(n, NoCase)))
+            return hdu.BitPix > 0 ? HduRole.QualityMask : HduRole.OtherImage;
+        return HduRole.Science;
     }
 
-    /// <summary>True when an HDU is the one that <c>NAME</c> or <c>NAME,VER</c> asks for; EXTVER is 1 where it is not given.</summary>
+    /// <summary>
+    /// True when an HDU is one that <c>NAME</c> or <c>NAME,VER</c> asks for, EXTVER being 1 where it is not given; one
+    /// without a name is asked for by the label that it has in lists.
+    /// </summary>
     public static bool Matches(Hdu hdu, string asked)
     {
         int comma = asked.LastIndexOf(',');
         bool hasVersion = comma > 0 && long.TryParse(asked.AsSpan(comma + 1).Trim(), NumberStyles.None, CultureInfo.InvariantCulture, out long version) && (hdu.Version ?? 1) == version;
-        string name = hdu.Name ?? (hdu.Index == 0 ? PrimaryName : "");
-        return name.Length > 0 && (name.Equals(asked.Trim(), NoCase) || (hasVersion && name.Equals(asked[..comma].Trim(), NoCase)));
+        return (hdu.Name ?? hdu.Label).Equals(asked.Trim(), NoCase) || (hasVersion && asked[..comma].Trim().Equals(hdu.Name, NoCase));
     }
 
     /// <summary>
@@ -53,7 +54,7 @@ internal static class HduRoles
         foreach (string name in asked ?? [])
         {
             if (!hdus.Any(h => Matches(h, name)))
-                throw new StackFormatException(path, $"no extension '{name}'", $"there are: {string.Join("; ", hdus.Select(Listed))}");
+                throw new StackFormatException(path, $"no extension '{name}'", $"there are: {string.Join("; ", hdus.Select(h => h.Label))}");
             if (!hdus.Any(h => Matches(h, name) && h.Kind is HduKind.Image or HduKind.CompressedImage && h.Axes.Count >= 2))
                 throw new StackFormatException(path, $"extension '{name}' holds no image", "name an image extension");
         }
@@ -90,7 +91,7 @@ internal static class HduRoles
             Hdu? mask = named.All(m => m.Version is not null) && science.Version is { } version
                 ? named.FirstOrDefault(m => m.Version == version)
                 : named.ElementAtOrDefault(place);
-            if (mask is not null && (mask.Planes == 1 || mask.Planes == science.Planes))
+            if (mask is not null && !mask.IsTruncated && (mask.Planes == 1 || mask.Planes == science.PromisedPlanes))
                 masks.Add(mask);
         }
 
@@ -98,6 +99,4 @@ internal static class HduRoles
     }
 
     private static bool SameShape(Hdu a, Hdu b) => a.Axes[0] == b.Axes[0] && a.Axes[1] == b.Axes[1];
-
-    private static string Listed(Hdu hdu) => hdu.Name is null && hdu.Index == 0 ? PrimaryName : hdu.Label;
 }

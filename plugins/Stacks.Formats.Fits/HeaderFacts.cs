@@ -10,7 +10,7 @@ internal static class HeaderFacts
     /// A fact and the keywords that may hold it, the better first: DATE-OBS, OBJECT, TELESCOP, INSTRUME and OBSERVER by
     /// Standard 4.0 (section 4.4.2), the others by common practice.
     /// </summary>
-    private static readonly (string Label, string[] Keywords, string Unit)[] Wanted =
+    private static readonly (string Label, IReadOnlyList<string> Keywords, string Unit)[] Wanted =
     [
         ("object", ["OBJECT", "TARGNAME"], ""),
         ("observed", ["DATE-OBS", "DATE-BEG", "MJD-OBS"], ""),
@@ -24,11 +24,11 @@ internal static class HeaderFacts
         ("frame type", ["IMAGETYP", "OBSTYPE"], ""),
         ("binning", ["CCDSUM", "BINNING", "XBINNING"], ""),
         ("detector temperature", ["CCD-TEMP", "DET-TEMP"], "C"),
-        ("gain", ["EGAIN", "ATODGAIN", "GAIN"], "e-/ADU"),
-        ("read noise", ["RDNOISE", "READNOIS", "READNSE", "RDNOIS", "ENOISE", "RON"], "e-"),
+        ("gain", CameraKeywords.GainKeywords, "e-/ADU"),
+        ("read noise", CameraKeywords.ReadNoiseKeywords, "e-"),
         ("pedestal", ["PEDESTAL"], "ADU"),
         ("overscan", ["BIASSEC"], ""),
-        ("saturation", ["SATURATE", "SATLEVEL", "SATURLEV", "SATUR"], ""),
+        ("saturation", CameraKeywords.SaturationKeywords, ""),
         ("time of day", ["TIME-OBS", "UT"], ""),
         ("airmass", ["AIRMASS"], ""),
     ];
@@ -39,11 +39,11 @@ internal static class HeaderFacts
         Hdu first = reader.HduOf(0);
         FitsHeader header = reader.ReadHeader(first);
         List<HeaderFact> facts = [];
-        foreach ((string label, string[] keywords, string unit) in Wanted)
+        foreach ((string label, IReadOnlyList<string> keywords, string unit) in Wanted)
         {
             foreach (string keyword in keywords)
             {
-                if ((header.Find(keyword) ?? reader.Primary.Find(keyword))?.Trim() is { Length: > 0 } text)
+                if ((header.Find(keyword) ?? reader.Primary.Find(keyword))?.Trim() is { Length: > 0 } text && !CameraKeywords.IsUnknown(keyword, text))
                 {
                     facts.Add(new HeaderFact(label, $"{text} {unit}".TrimEnd() + $" ({keyword})"));
                     break;

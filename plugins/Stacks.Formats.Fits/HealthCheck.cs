@@ -52,7 +52,7 @@ internal static class HealthCheck
 
     private static HealthFinding Truncation(Hdu hdu, string name)
     {
-        string kept = hdu.Role == HduRole.Science ? string.Create(CultureInfo.InvariantCulture, $"; whole frames: {hdu.Planes} of {hdu.DataBytes / hdu.PlaneBytes}") : "";
+        string kept = hdu.Role == HduRole.Science ? string.Create(CultureInfo.InvariantCulture, $"; whole frames: {hdu.Planes} of {hdu.PromisedPlanes}") : "";
         return new HealthFinding(true, string.Create(CultureInfo.InvariantCulture, $"{name}: truncated: the file ends at byte {hdu.DataOffset + hdu.PresentBytes}, the header promises data to byte {hdu.DataOffset + hdu.DataBytes}{kept}"));
     }
 

@@ -8,9 +8,6 @@ internal static class ImageLayout
 {
     private const string Repair = "repair the header or get the file again";
 
-    /// <summary>Keywords for the value at which a detector saturates, in value units (common practice).</summary>
-    private static readonly string[] SaturationKeywords = ["SATURATE", "SATLEVEL", "SATURLEV", "SATUR"];
-
     /// <summary>The layout of an image of two and more axes.</summary>
     /// <exception cref="StackFormatException">The scaling is broken, or a plane is larger than memory can address.</exception>
     public static FrameLayout Read(Hdu hdu, FitsHeader header)
@@ -65,7 +62,7 @@ internal static class ImageLayout
     /// </summary>
     private static double? ReadSaturation(SampleType type, ValueTransform transform, FitsHeader header)
     {
-        double? stated = SaturationKeywords.Select(header.FindNumber).FirstOrDefault(value => value > 0) is { } value
+        double? stated = CameraKeywords.SaturationKeywords.Select(header.FindNumber).FirstOrDefault(value => value > 0) is { } value
             ? transform.ToStored(value)
             : null;
         if (!type.IsInteger())

@@ -11,7 +11,8 @@ internal static class PartList
     /// <summary>The parts of a file.</summary>
     public static IReadOnlyList<StackPart> Of(FitsReader reader)
     {
-        List<StackPart> parts = reader.Hdus.Select(Describe).ToList();
+        HashSet<int> masksInUse = [.. reader.Hdus.SelectMany(hdu => hdu.Masks).Select(mask => mask.Index)];
+        List<StackPart> parts = reader.Hdus.Select(hdu => Describe(hdu, masksInUse)).ToList();
         if (reader.HeaderIsTruncated)
             parts.Add(new StackPart(string.Create(CultureInfo.InvariantCulture, $"HDU {reader.Hdus.Count}"), "truncated inside its header", "unknown", "not carried"));
         else if (reader.File.Length > reader.ScannedEnd)
@@ -30,7 +31,7 @@ internal static class PartList
         _ => "extension of unknown type",
     };
 
-    private static StackPart Describe(Hdu hdu)
+    private static StackPart Describe(Hdu hdu, HashSet<int> masksInUse)
     {
         string shape = hdu.Kind switch
         {
@@ -43,7 +44,7 @@ internal static class PartList
         {
             HduRole.Science => "science",
             HduRole.ErrorPlane => "error plane",
-            HduRole.QualityMask => "quality mask",
+            HduRole.QualityMask => masksInUse.Contains(hdu.Index) ? "quality mask" : "quality mask of no frame here",
             HduRole.OtherImage => hdu.Axes.Count == 1 ? "array of one axis" : "other image",
             _ when ChangeMask.IsOurs(hdu) => "change mask of an earlier run",
             _ => KindName(hdu),

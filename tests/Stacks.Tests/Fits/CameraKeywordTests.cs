@@ -126,6 +126,19 @@ public class CameraKeywordTests
         Assert.Contains("differ", differ.Doubt, StringComparison.Ordinal);
     }
 
+    [Fact]
+    public void Facts_come_from_the_first_keyword_that_knows()
+    {
+        using TemporaryFolder folder = new();
+        using IStackReader reader = new FitsBytes()
+            .Primary(16, [], [], FitsBytes.Text("OBJECT", "M 13"), FitsBytes.Card("EXPTIME", 30))
+            .Image(16, [2, 1], FitsBytes.Shorts(1, 2), FitsBytes.Card("EXPTIME", 60), FitsBytes.Card("ATODGAIN", "0.0"), FitsBytes.Card("GAIN", 2), FitsBytes.Card("RDNOISE", "0"))
+            .Open(folder);
+        Assert.Equal(
+            ["object: M 13 (OBJECT)", "exposure: 60 s (EXPTIME)", "gain: 2 e-/ADU (GAIN)", "unit: ADU"],
+            reader.Facts.Select(fact => $"{fact.Label}: {fact.Value}"));
+    }
+
     [NeedsFact(Needs.RealDataNeed)]
     public void A_real_multi_extension_file()
     {

@@ -18,7 +18,9 @@ public class RolesTests
         .Image(16, [2, 2], FitsBytes.Shorts(5, 6, 7, 8), Named("SCI", 2))
         .Image(16, [2, 2], FitsBytes.Shorts(1, 0, 0, 0), Named("DQ", 2))
         .Image(-32, [2, 2], FitsBytes.Floats(9, 9, 9, 9), Named("AREA"))
-        .Image(8, [7], new byte[7], Named("WAVES"));
+        .Image(8, [7], new byte[7], Named("WAVES"))
+        .Image(8, [1, 1, 3], new byte[3])
+        .Image(-32, [2, 2], FitsBytes.Floats(0, 0, 0, 0), Named("MASK"));
 
     private static SampleFlags[]? Marked(IStackReader reader, int frame)
     {
@@ -33,9 +35,9 @@ public class RolesTests
         using IStackReader reader = TwoOfEach().Open(folder);
         Assert.Equal(["SCI,1", "SCI,2"], Enumerable.Range(0, reader.FrameCount).Select(i => reader.Layout(i).Extension));
         Assert.Equal(
-            ["empty", "science", "error plane", "quality mask", "science", "quality mask", "other image", "array of one axis"],
+            ["empty", "science", "error plane", "quality mask", "science", "quality mask", "other image", "array of one axis", "other image", "other image"],
             reader.Parts.Select(part => part.Role));
-        Assert.Equal(["carried", "filtered", "carried", "carried", "filtered", "carried", "carried", "carried"], reader.Parts.Select(part => part.Fate));
+        Assert.Equal(["carried", "filtered", "carried", "carried", "filtered", "carried", "carried", "carried", "carried", "carried"], reader.Parts.Select(part => part.Fate));
     }
 
     [Fact]
@@ -85,6 +87,34 @@ public class RolesTests
     }
 
     [Fact]
+    public void A_mask_of_another_number_of_planes_is_for_none()
+    {
+        using TemporaryFolder folder = new();
+        using IStackReader reader = new FitsBytes()
+            .Primary(16, [2, 1, 3], FitsBytes.Shorts(1, 2, 3, 4, 5, 6))
+            .Image(8, [2, 1, 2], [1, 1, 1, 1], Named("DQ"))
+            .Open(folder);
+        Assert.Null(Marked(reader, 0));
+        Assert.Equal("quality mask of no frame here", reader.Parts[1].Role);
+    }
+
+    [Fact]
+    public void A_truncated_stack_keeps_its_mask()
+    {
+        using TemporaryFolder folder = new();
+        byte[] bytes = new FitsBytes()
+            .Primary(16, [], [])
+            .Image(8, [2, 1, 3], [0, 1, 0, 0, 1, 1], Named("DQ"))
+            .Image(16, [2, 1, 3], FitsBytes.Shorts(1, 2, 3, 4, 5, 6), Named("SCI"))
+            .ToArray();
+        File.WriteAllBytes(folder.File("cut.fits"), bytes[..^(2880 - 9)]);
+        using IStackReader reader = new Formats.Fits.FitsFormat().Open(folder.File("cut.fits"), new ReadOptions { AllowTruncated = true });
+        Assert.Equal(2, reader.FrameCount);
+        Assert.Equal([0, SampleFlags.Missing], Marked(reader, 0)!);
+        Assert.Equal([0, 0], Marked(reader, 1)!);
+    }
+
+    [Fact]
     public void A_large_mask_is_read_strip_by_strip()
     {
         const int side = 700;
@@ -118,6 +148,7 @@ public class RolesTests
     [InlineData("SCI,2", 1)]
     [InlineData("AREA", 1)]
     [InlineData("AREA,1", 1)] // EXTVER is 1 where it is not given (Standard 4.0, section 4.4.2.6)
+    [InlineData("HDU 8", 3)] // it has no name
     [InlineData("ERR", 1)] // asked for by name
     public void Extensions_can_be_named(string name, int frames)
     {
@@ -134,7 +165,7 @@ public class RolesTests
         using TemporaryFolder folder = new();
         StackFormatException e = Assert.Throws<StackFormatException>(() => TwoOfEach().Open(folder, new ReadOptions { Extensions = [name] }));
         Assert.Contains($"'{name}'", e.Message, StringComparison.Ordinal);
-        Assert.Contains("PRIMARY; SCI,1; ERR,1; DQ,1; SCI,2; DQ,2; AREA; WAVES", e.Message, StringComparison.Ordinal);
+        Assert.Contains("primary; SCI,1; ERR,1; DQ,1; SCI,2; DQ,2; AREA; WAVES; HDU 8; MASK", e.Message, StringComparison.Ordinal);
     }
 
     [Theory]

@@ -122,6 +122,27 @@ public class RoundTripTests
     }
 
     [Fact]
+    public void Frames_beyond_4_gib_are_found()
+    {
+        // A sparse file: only its header and its last block take room on the disk.
+        using TemporaryFolder folder = new();
+        string path = new FitsBytes().Primary(16, [2000, 2000, 700], []).Save(folder);
+        const long planeBytes = 2000 * 2000 * 2;
+        long end = 2880 + (700 * planeBytes);
+        using (FileStream file = new(path, FileMode.Open))
+        {
+            file.Position = end - 2;
+            file.Write([0x12, 0x34]);
+        }
+
+        using IStackReader reader = Format.Open(path, new ReadOptions());
+        Assert.Equal(700, reader.FrameCount);
+        byte[] last = PassThrough.Stored(reader, 699);
+        Assert.Equal([0x34, 0x12], last[^2..]);
+        Assert.Equal(0, PassThrough.Stored(reader, 698).Max());
+    }
+
+    [Fact]
     public void Half_floats_are_refused_with_the_reason()
     {
         Assert.Contains("16-bit", Format.CannotStore(SampleType.Float16), StringComparison.Ordinal);
