@@ -74,7 +74,11 @@ internal sealed class FitsWriter : IStackWriter
                 continue;
             List<FitsCard> cards = makeCards();
             if (i == 0)
-                cards.AddRange(ProvenanceCards.Of(provenance, Losses(), HeaderImage.RoomFor(hdu.HeaderBytes) - cards.Count));
+            {
+                bool longStrings = cards.Any(card => card.Is("LONGSTRN"));
+                cards.AddRange(ProvenanceCards.Of(provenance, Losses(), longStrings, HeaderImage.RoomFor(hdu.HeaderBytes) - cards.Count));
+            }
+
             output.Write(HeaderImage.Build(cards, hdu.HeaderBytes, dataSums[i]), hdu.Offset);
         }
 

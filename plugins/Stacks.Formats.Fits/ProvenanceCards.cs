@@ -13,11 +13,15 @@ internal static class ProvenanceCards
     public static IReadOnlyList<string> Keywords { get; } =
     [
         "STKPROG", "STKTITLE", "STKRECIP", "STKWORK", "STKSRC", "STKSRCSH", "STKFRAME", "STKBRITE", "STKDARK", "STKKEPT",
-        "STKSATUR", "STKMISS", "STKFLXIN", "STKFLXRM", "STKFLXUT",
+        "STKSATUR", "STKMISS", "STKFLXIN", "STKFLXRM", "STKFLXOT",
     ];
 
     /// <summary>The cards of a run; where they need more than <paramref name="room"/>, the last says what is left out.</summary>
-    public static IReadOnlyList<FitsCard> Of(ProvenanceRecord record, IEnumerable<string> notes, int room)
+    /// <param name="record">Who did what to which data.</param>
+    /// <param name="notes">Further lines for HISTORY.</param>
+    /// <param name="longStrings">True when the header announces CONTINUE by LONGSTRN already.</param>
+    /// <param name="room">Cards that the header has left.</param>
+    public static IReadOnlyList<FitsCard> Of(ProvenanceRecord record, IEnumerable<string> notes, bool longStrings, int room)
     {
         List<FitsCard> cards =
         [
@@ -35,9 +39,11 @@ internal static class ProvenanceCards
             FitsCard.Integer("STKMISS", record.Totals.Missing, "missing samples"),
             FitsCard.Number("STKFLXIN", record.Totals.FluxIn, "sum of valid input values"),
             FitsCard.Number("STKFLXRM", record.Totals.FluxRemoved, "sum of input minus output"),
-            FitsCard.Number("STKFLXUT", record.Totals.FluxOut, "sum of valid output values"),
+            FitsCard.Number("STKFLXOT", record.Totals.FluxOut, "sum of valid output values"),
             .. History(record, notes).SelectMany(line => FitsCard.Commentary("HISTORY", line)),
         ];
+        if (!longStrings && cards.Any(card => card.Is("CONTINUE")))
+            cards.InsertRange(0, FitsCard.Text("LONGSTRN", "OGIP 1.0", "long strings go on in CONTINUE"));
         if (cards.Count <= room)
             return cards;
         cards.RemoveRange(room - 1, cards.Count - room + 1);

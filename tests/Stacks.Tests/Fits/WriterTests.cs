@@ -14,7 +14,7 @@ public class WriterTests
     private static readonly FitsFormat Format = new();
 
     private static readonly string[] OwnKeywords =
-        ["STKPROG", "STKTITLE", "STKRECIP", "STKWORK", "STKSRC", "STKSRCSH", "STKFRAME", "STKBRITE", "STKDARK", "STKKEPT", "STKSATUR", "STKMISS", "STKFLXIN", "STKFLXRM", "STKFLXUT"];
+        ["STKPROG", "STKTITLE", "STKRECIP", "STKWORK", "STKSRC", "STKSRCSH", "STKFRAME", "STKBRITE", "STKDARK", "STKKEPT", "STKSATUR", "STKMISS", "STKFLXIN", "STKFLXRM", "STKFLXOT"];
 
     private static List<(List<string> Cards, byte[] Data)> Written(TemporaryFolder folder, IStackReader source, bool mask = false, TypeChange? change = null, SampleFlags flag = SampleFlags.None)
     {
@@ -37,7 +37,7 @@ public class WriterTests
     {
         string[] odd =
         [
-            "LONGSTRN= 'OGIP 1.0'", "LONGTEXT= 'begins here &' / more", "CONTINUE  'and ends here'", "HIERARCH ESO DET NAME = 'Irene' / detector",
+            "LONGSTRN= 'OGIP 1.0'", "LONGTEXT= 'begins here &' / more", "CONTINUE  'and ends here'", "HIERARCH LAB DET NAME = 'Second' / detector",
             "COMMENT twice", "", "COMMENT twice", "HISTORY old", "              / section of blanks", "OBJECT  =      'free'/tight", "EXPTIME =  1.50D+01",
             "CRVAL1  =     1.2345678901234567E-5", "NOTE caf\u00e9 in Latin-1", "CRPIX1  = 10", "CD1_1   = -2.77E-4", "HISTORY older", "DATE-OBS= '1999-01-01T00:00:00'",
         ];
@@ -63,6 +63,22 @@ public class WriterTests
             Assert.DoesNotContain(cards, card => Keyword(card) == keyword);
         foreach (string keyword in new[] { "CHECKSUM", "DATASUM", "DATE", "EXTEND" })
             Assert.Single(cards, card => Keyword(card) == keyword);
+    }
+
+    /// <summary>The long string convention (Standard 4.0, section 4.2.1.2) recommends LONGSTRN; fitsverify warns without it.</summary>
+    [Fact]
+    public void Long_strings_are_announced_once()
+    {
+        using TemporaryFolder folder = new();
+        foreach (string[] cards in new string[][] { [], ["LONGSTRN= 'OGIP 1.0'"] })
+        {
+            string path = folder.File(new string('n', 90) + cards.Length + ".fits");
+            File.WriteAllBytes(path, new FitsBytes().Primary(16, [2, 1], FitsBytes.Shorts(1, 2), cards).ToArray());
+            using IStackReader source = Format.Open(path, new ReadOptions());
+            List<string> written = Written(folder, source)[0].Cards;
+            Assert.Contains(written, card => Keyword(card) == "CONTINUE");
+            Assert.Single(written, card => Keyword(card) == "LONGSTRN");
+        }
     }
 
     [Fact]
