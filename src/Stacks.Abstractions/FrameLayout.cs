@@ -49,7 +49,10 @@ public sealed record FrameLayout
     /// <summary>Quantisation step q in value units: |scale| for integers, 0 for floats, more where low bits are unused.</summary>
     public double QuantisationStep { get; init; }
 
-    /// <summary>Stored value at or beyond which a sample is saturated; null where nothing is known.</summary>
+    /// <summary>
+    /// Stored value from which a sample is saturated: this or brighter, which is this or lower where the scale is
+    /// negative. Null where nothing is known.
+    /// </summary>
     public double? SaturationStored { get; init; }
 
     /// <summary>Colour-filter mosaic of the frame. A filter never sees one: the pipeline splits it first.</summary>

@@ -24,8 +24,8 @@ internal abstract class StoredSamples
     };
 
     /// <summary>
-    /// Adds Missing (NaN, infinite, BLANK) and Saturated (at or beyond the layout's saturation, in stored units: the
-    /// digitiser's upper end also where a negative scale makes it the dark one) to the flags.
+    /// Adds Missing (NaN, infinite, BLANK) and Saturated (the layout's saturation or brighter: at or above it in stored
+    /// units, at or below it where the scale is negative) to the flags.
     /// </summary>
     public abstract void Mark(ReadOnlySpan<byte> stored, FrameLayout layout, Span<SampleFlags> flags);
 
@@ -72,17 +72,19 @@ internal sealed class StoredSamples<TStored> : StoredSamples
         ReadOnlySpan<TStored> samples = MemoryMarshal.Cast<byte, TStored>(stored);
         bool hasBlank = IsInteger && layout.Blank is { } b && Int128.CreateSaturating(TStored.CreateSaturating(b)) == b;
         TStored blank = hasBlank ? TStored.CreateSaturating(layout.Blank!.Value) : default;
-        double least = IsInteger ? Math.Ceiling(layout.SaturationStored ?? double.NaN) : layout.SaturationStored ?? double.NaN;
-        bool hasLeast = least <= Highest;
-        TStored saturated = hasLeast ? TStored.CreateSaturating(least) : default;
-        if (IsInteger && !hasBlank && !hasLeast)
+        double end = layout.SaturationStored ?? double.NaN;
+        bool upward = layout.Transform.Scale > 0;
+        bool hasEnd = upward ? end <= Highest : end >= Lowest;
+        TStored least = hasEnd && upward ? TStored.CreateSaturating(IsInteger ? Math.Ceiling(end) : end) : TStored.MinValue;
+        TStored most = hasEnd && !upward ? TStored.CreateSaturating(IsInteger ? Math.Floor(end) : end) : TStored.MaxValue;
+        if (IsInteger && !hasBlank && !hasEnd)
             return;
         for (int i = 0; i < samples.Length; i++)
         {
             TStored sample = samples[i];
             if (!TStored.IsFinite(sample) || (hasBlank && sample == blank))
                 flags[i] |= SampleFlags.Missing;
-            else if (hasLeast && sample >= saturated && (flags[i] & SampleFlags.Missing) == 0)
+            else if (hasEnd && sample >= least && sample <= most && (flags[i] & SampleFlags.Missing) == 0)
                 flags[i] |= SampleFlags.Saturated;
         }
     }

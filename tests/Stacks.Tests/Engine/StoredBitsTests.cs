@@ -147,11 +147,11 @@ public class StoredBitsTests
     }
 
     [Fact]
-    public void Saturation_is_the_upper_end_of_stored_samples_also_with_a_negative_scale()
+    public void Saturation_is_the_bright_end_which_is_the_lower_one_of_stored_samples_under_a_negative_scale()
     {
         using Bench bench = new();
-        FrameLayout layout = Row(SampleType.UInt16, 4) with { Transform = new ValueTransform(-1, 65535), SaturationStored = 64000.5 };
-        bench.Source.Add<ushort>(layout, 65535, 64001, 64000, 0);
+        FrameLayout layout = Row(SampleType.UInt16, 4) with { Transform = new ValueTransform(-1, 65535), SaturationStored = 1534.5 };
+        bench.Source.Add<ushort>(layout, 0, 1534, 1535, 65535);
         Assert.Equal([2, 2, 0, 0], bench.Run(bench.Plan()).Flags[0]);
     }
 
