@@ -90,7 +90,8 @@ internal static class RunReport
         if (smoothing.Length == 0)
             yield break;
         yield return $"{string.Join(" and ", smoothing)} wrote every pixel anew. Smoothing moves flux between neighbours, so single sources change "
-            + "even where the total is kept; the wider the window, the more. Measure what must be exact on the input or after selective steps alone.";
+            + "even where the total is kept; the wider the window, the more. Measure what must be exact on the input or after selective steps alone; "
+            + "stacks filters NAME tells what each parameter does to sources.";
         yield return "After smoothing, gain and read noise of the header no longer give the errors of the pixels.";
     }
 

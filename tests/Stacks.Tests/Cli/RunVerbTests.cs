@@ -135,6 +135,23 @@ public sealed class RunVerbTests : IDisposable
         Assert.Equal(2, lines.Length);
     }
 
+    /// <summary>script (util-linux) gives the host a terminal.</summary>
+    [NeedsFact("script")]
+    public void On_a_terminal_a_live_line_tells_frames_rate_and_time_left()
+    {
+        string stack = bench.Put("a.fits", SmallFiles.Fits(200, 200, 6, (x, y, f) => 1000 + (((x * 31) + (y * 17) + f) % 50)));
+        string recipe = bench.Recipe("[noise]\nfrom = \"frame\"\n[[step]]\nfilter = \"bilateral\"\nspatial_sigma = 2\n"); // long enough to be drawn
+        string command = $"dotnet '{Checkout.Host}' run '{recipe}' '{stack}' '{bench.File("none.fits")}' -o '{bench.Out}'";
+
+        ToolResult result = Tool.Run("script", "-qec", command, "/dev/null");
+
+        Assert.Equal(66, result.ExitCode);
+        Assert.Contains("[1/2] a.fits", result.Output, StringComparison.Ordinal);
+        Assert.Contains("frames/s", result.Output, StringComparison.Ordinal);
+        Assert.Contains("a.fits: done in 0:", result.Output, StringComparison.Ordinal);
+        Assert.Contains("2 stacks: 1 made, 0 done before, 1 failed", result.Output, StringComparison.Ordinal);
+    }
+
     [Fact]
     public void A_stopped_run_ends_with_75_and_leaves_no_result()
     {
