@@ -2,9 +2,13 @@ using System.Runtime.InteropServices;
 
 namespace Stacks.Cli;
 
-/// <summary>Turns SIGINT and SIGTERM into a cancelled token, so that a run ends without a file under its final name.</summary>
+/// <summary>
+/// Turns SIGINT and SIGTERM into a cancelled token, so that a run ends without a file under its final name. SIGXFSZ is
+/// ignored: a write beyond the file size limit then fails by EFBIG, which is reported, where it would kill the process.
+/// </summary>
 internal sealed class StopSignals : IDisposable
 {
+    private const PosixSignal FileSizeExceeded = (PosixSignal)25;
     private readonly CancellationTokenSource source = new();
     private readonly PosixSignalRegistration[] registrations;
 
@@ -12,6 +16,7 @@ internal sealed class StopSignals : IDisposable
     [
         PosixSignalRegistration.Create(PosixSignal.SIGINT, Stop),
         PosixSignalRegistration.Create(PosixSignal.SIGTERM, Stop),
+        .. OperatingSystem.IsWindows() ? [] : new[] { PosixSignalRegistration.Create(FileSizeExceeded, context => context.Cancel = true) },
     ];
 
     /// <summary>Cancelled by the first signal.</summary>

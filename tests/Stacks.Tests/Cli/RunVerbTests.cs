@@ -32,6 +32,20 @@ public sealed class RunVerbTests : IDisposable
         Assert.Contains(Path.Combine(bench.Out, "a.fits.prov.json"), result.Output, StringComparison.Ordinal);
     }
 
+    /// <summary>setrlimit(2): a write beyond RLIMIT_FSIZE raises SIGXFSZ, whose default ends the process, and fails by EFBIG otherwise.</summary>
+    [NeedsFact("bash")]
+    public void A_file_size_limit_is_an_error_with_its_name_and_exit_code()
+    {
+        string recipe = bench.Recipe(), stack = bench.Put("a.fits", SmallFiles.Fits(64, 64, 4, CliBench.Sample));
+        ToolResult result = Tool.RunWith(
+            new Dictionary<string, string> { ["DOTNET_EnableWriteXorExecute"] = "0" }, // its memory file would meet the limit too
+            "bash", "-c", "ulimit -f 16; exec dotnet \"$@\"", "bash", Checkout.Host, "run", recipe, stack, "-o", bench.Out);
+
+        Assert.Equal(74, result.ExitCode);
+        Assert.Contains("EFBIG", result.Error, StringComparison.Ordinal);
+        Assert.Empty(Directory.GetFiles(bench.Out));
+    }
+
     [Fact]
     public void A_second_run_finds_the_work_done_and_leaves_it()
     {
