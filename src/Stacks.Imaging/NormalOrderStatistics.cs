@@ -9,9 +9,7 @@ namespace Stacks.Imaging;
 /// </summary>
 public static class NormalOrderStatistics
 {
-    // The integrand and all its derivatives vanish at the ends, so the trapezoid rule converges beyond double precision.
     private const double End = 8.5;
-    private const double Step = 1.0 / 64;
 
     private static readonly ConcurrentDictionary<int, double> Ranges = new();
 
@@ -25,8 +23,11 @@ public static class NormalOrderStatistics
         double logFactor = Math.Log(count);
         for (int i = 1; i < rank; i++)
             logFactor += Math.Log((double)(count - i) / i);
-        double sum = 0;
-        for (double x = Step; x <= End; x += Step)
+
+        // The integrand and all its derivatives vanish at the ends, so the trapezoid rule converges beyond double
+        // precision once its step is well below the spread of the rank, which is near 1 / sqrt(n).
+        double step = 1 / Math.Max(64, 4 * Math.Sqrt(count)), sum = 0;
+        for (double x = step; x <= End; x += step)
         {
             // The two halves are mirror images with P and 1 - P exchanged.
             double below = Math.Log(Distribution(-x)), above = Math.Log(Distribution(x)), density = -x * x / 2;
@@ -34,7 +35,7 @@ public static class NormalOrderStatistics
                 - Math.Exp(logFactor + ((rank - 1) * below) + ((count - rank) * above) + density));
         }
 
-        return sum * Step / Math.Sqrt(2 * Math.PI);
+        return sum * step / Math.Sqrt(2 * Math.PI);
     }
 
     /// <summary>c(n): the expected type-7 interquartile range of n unit normals. Sigma is estimated by IQR / c(n).</summary>
