@@ -6,9 +6,9 @@ namespace Stacks.Filters.AdaptiveMedian;
 /// <summary>
 /// A real source cannot be sharper than the optics. With r = exp(-4 ln 2 / f^2), a bright candidate v over a base b may
 /// be a source only if on all four axes (d = 1 twice, d = sqrt 2 twice) the higher n of the two opposite neighbours has
-/// n - b &gt;= 0.7 r^(d d) (v - b) - 2 sigma(v). Neighbours outside of the frame are reflected like every window;
-/// an axis with a neighbour that takes no part in windows says nothing against a source: beside a dead pixel, the wing
-/// of a star would otherwise look sharp.
+/// n - b &gt;= 0.7 r^(d d) (v - b) - 2 sigma(v). A neighbour that nobody saw (outside of the frame, missing, defect) may
+/// have been the higher one, so it speaks for a source: taken as absent, it would cost the light of every star that an
+/// edge or a bad column cuts.
 /// </summary>
 internal static class OpticalBound
 {
@@ -24,25 +24,27 @@ internal static class OpticalBound
     /// <param name="x">Column.</param>
     /// <param name="y">Row.</param>
     /// <param name="fwhm">f, samples, above 0.</param>
-    /// <param name="floor">b.</param>
+    /// <param name="level">b.</param>
     /// <param name="sigma">sigma(v).</param>
-    public static bool Allows<T>(Windows<T> windows, int x, int y, double fwhm, double floor, double sigma)
+    public static bool Allows<T>(Windows<T> windows, int x, int y, double fwhm, double level, double sigma)
         where T : unmanaged, INumber<T>
     {
-        double height = double.CreateTruncating(windows[x, y]) - floor;
+        double height = double.CreateTruncating(windows[x, y]) - level;
         for (int axis = 0; axis < AxisX.Length; axis++)
         {
             int dx = AxisX[axis], dy = AxisY[axis];
             double fallOff = Math.Exp(-4 * Math.Log(2) * ((dx * dx) + (dy * dy)) / (fwhm * fwhm));
-            double least = (Share * fallOff * height) - (Slack * sigma);
-            if (!Reaches(windows, x + dx, y + dy, floor + least) && !Reaches(windows, x - dx, y - dy, floor + least))
+            double least = level + (Share * fallOff * height) - (Slack * sigma);
+            if (!Supports(windows, x + dx, y + dy, least) && !Supports(windows, x - dx, y - dy, least))
                 return false;
         }
 
         return true;
     }
 
-    private static bool Reaches<T>(Windows<T> windows, int x, int y, double level)
+    private static bool Supports<T>(Windows<T> windows, int x, int y, double least)
         where T : unmanaged, INumber<T> =>
-        !windows.TakesPart(x, y) || double.CreateTruncating(windows[x, y]) >= level;
+        (uint)x >= (uint)windows.Width || (uint)y >= (uint)windows.Height
+        || !windows.TakesPart(x, y)
+        || double.CreateTruncating(windows[x, y]) >= least;
 }

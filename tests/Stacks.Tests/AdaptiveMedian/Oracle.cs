@@ -41,16 +41,15 @@ internal static class Oracle
             {
                 if (!TakesPart(x, y) || (given[At(x, y)] & SampleFlags.Saturated) != 0)
                     continue;
-                double v = Value(x, y), firstMedian = double.NaN, m = 0, q1 = 0, iqr = 0, c = 0;
+                double v = Value(x, y), firstMedian = double.NaN, m = 0, iqr = 0, c = 0;
                 bool trusted = false;
                 for (int k = 3; k <= largest && !trusted; k += 2)
                 {
                     List<double> w = Window(x, y, k, TakesPart);
                     if (w.Count < 3)
                         continue;
-                    q1 = Type7<T>(w, 0.25);
                     m = Type7<T>(w, 0.5);
-                    iqr = Type7<T>(w, 0.75) - q1;
+                    iqr = Type7<T>(w, 0.75) - Type7<T>(w, 0.25);
                     c = NormalRange(w.Count);
                     if (double.IsNaN(firstMedian))
                         firstMedian = m;
@@ -70,18 +69,20 @@ internal static class Oracle
                 if (dark && -difference > limit)
                     judged[At(x, y)] |= SampleFlags.ReplacedDark;
                 if (bright && difference > limit)
-                    judged[At(x, y)] |= hasPsf && IsPossibleSource(x, y, v, Type7<T>(Window(x, y, largest, TakesPart), 0.25)) ? SampleFlags.KeptAsSource : SampleFlags.ReplacedBright;
+                    judged[At(x, y)] |= hasPsf && IsPossibleSource(x, y, v) ? SampleFlags.KeptAsSource : SampleFlags.ReplacedBright;
             }
         }
 
-        bool IsPossibleSource(int x, int y, double v, double floor)
+        bool IsPossibleSource(int x, int y, double v)
         {
+            double floor = Type7<T>(Window(x, y, largest, TakesPart), 0.25);
             double r = Math.Exp(-4 * Math.Log(2) / (rules.Fwhm * rules.Fwhm));
             double slack = 2 * noise.Sigma(x, y, v);
             bool Axis(int dx, int dy)
             {
                 double fallOff = dx != 0 && dy != 0 ? r * r : r;
-                if (!TakesPart(x + dx, y + dy) || !TakesPart(x - dx, y - dy))
+                bool Seen(int i, int j) => i >= 0 && j >= 0 && i < width && j < height && TakesPart(i, j);
+                if (!Seen(x + dx, y + dy) || !Seen(x - dx, y - dy))
                     return true;
                 double higher = Math.Max(Value(x + dx, y + dy), Value(x - dx, y - dy));
                 return higher - floor >= (0.7 * fallOff * (v - floor)) - slack;

@@ -10,6 +10,7 @@ internal enum Planted
     Track,
     PathTrack,
     Block,
+    OnStar,
 }
 
 /// <summary>
@@ -20,10 +21,11 @@ internal enum Planted
 internal sealed class StarFieldTrial
 {
     public const double Gain = 1.46, ReadNoise = 3.2, Pedestal = 200;
-    private const ushort Full = 60_000;
+    private const ushort Full = 12_000;
 
     private readonly Random random;
     private readonly bool[] taken;
+    private int events;
 
     public StarFieldTrial(int side, int seed, double fwhm = 2.4, double sky = 120, int stars = 150, int eventsOfAKind = 40, double slope = 0)
     {
@@ -35,6 +37,7 @@ internal sealed class StarFieldTrial
         Peak = new double[side * side];
         Height = new double[side * side];
         Kind = new Planted[side * side];
+        Event = new int[side * side];
         Core = new bool[side * side];
         Samples = new ushort[side * side];
         Flags = new SampleFlags[side * side];
@@ -49,6 +52,7 @@ internal sealed class StarFieldTrial
             PlantTrack();
             PlantPathTrack();
             PlantBlock();
+            PlantOnStar();
         }
 
         for (int i = 0; i < Samples.Length; i++)
@@ -76,6 +80,9 @@ internal sealed class StarFieldTrial
     public double[] Height { get; }
 
     public Planted[] Kind { get; }
+
+    /// <summary>Number of the event that struck the pixel, from 1; 0 for none.</summary>
+    public int[] Event { get; }
 
     /// <summary>Within half the FWHM of a star's centre, or its brightest pixel.</summary>
     public bool[] Core { get; }
@@ -138,6 +145,14 @@ internal sealed class StarFieldTrial
         Try(Planted.Isolated, (x, y) => [(x, y, height)]);
     }
 
+    private void PlantOnStar()
+    {
+        (double x, double y, _) = Centres[random.Next(Centres.Count)];
+        double height = DrawHeight(), angle = 2 * Math.PI * random.NextDouble(), distance = 3 * random.NextDouble();
+        int column = (int)Math.Round(x + (distance * Math.Cos(angle))), row = (int)Math.Round(y + (distance * Math.Sin(angle)));
+        Try(Planted.OnStar, (_, _) => [(column, row, height)]);
+    }
+
     private void PlantBlock()
     {
         double height = DrawHeight();
@@ -181,8 +196,10 @@ internal sealed class StarFieldTrial
             List<(int X, int Y, double Height)> pixels = shape(random.Next(Side), random.Next(Side));
             if (!pixels.TrueForAll(p => p.X >= 0 && p.Y >= 0 && p.X < Side && p.Y < Side && !taken[(p.Y * Side) + p.X]))
                 continue;
+            events++;
             foreach ((int x, int y, double height) in pixels)
             {
+                Event[(y * Side) + x] = events;
                 Height[(y * Side) + x] = height;
                 Kind[(y * Side) + x] = kind;
                 for (int j = Math.Max(0, y - 4); j <= Math.Min(Side - 1, y + 4); j++)
