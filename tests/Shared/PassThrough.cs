@@ -13,8 +13,9 @@ public static class PassThrough
     /// <param name="mask">Write a change mask: <paramref name="flag"/>, and the frame's number in its first sample.</param>
     /// <param name="flag">Flags of every sample.</param>
     /// <param name="change">Changes stored samples before they are encoded, and their type.</param>
+    /// <param name="compress">Compress losslessly.</param>
     public static ProvenanceRecord Run(
-        IStackReader source, IStackFormat format, string target, bool mask = false, SampleFlags flag = SampleFlags.None, TypeChange? change = null)
+        IStackReader source, IStackFormat format, string target, bool mask = false, SampleFlags flag = SampleFlags.None, TypeChange? change = null, bool compress = false)
     {
         WriteRequest request = new()
         {
@@ -22,6 +23,7 @@ public static class PassThrough
             Path = target,
             SampleTypeOf = frame => change?.Type ?? source.Layout(frame).SampleType,
             Mask = mask,
+            Compress = compress,
             Created = Created,
         };
         List<LedgerRow> ledger = [];
