@@ -8,6 +8,13 @@ namespace Stacks.Filters.AdaptiveMedian;
 /// could have imaged is kept; the rest is replaced by the median of sound neighbours. Adaptive median of Hwang and
 /// Haddad, IEEE Transactions on Image Processing 4 (1995) 499, with IQR tests against the noise for its min/max tests.
 /// </summary>
+/// <remarks>
+/// Where it finds less (simulated star fields of 7.8 ADU sigma, hits above 10 sigma, FWHM 2.4 px): of 2 x 2 blocks 90 %
+/// are found on a level sky, 66 % on a gradient of 2 sigma a pixel and 21 % on one of 5; of isolated hits 99.9 %, 98 %
+/// and 90 %. The sharper the optics, the more a hit looks like a source: at FWHM 1.5 px 85 % of isolated hits and 10 %
+/// of blocks are found, at 1.2 px (a mosaic with stars of 2.4 px) 28 % and 2 %. On a source only hits brighter than it
+/// are found.
+/// </remarks>
 public sealed class AdaptiveMedianFilter : IFilterPlugin
 {
     private const string Unstated = "unstated";

@@ -27,7 +27,7 @@ internal sealed class StarFieldTrial
     private readonly bool[] taken;
     private int events;
 
-    public StarFieldTrial(int side, int seed, double fwhm = 2.4, double sky = 120, int stars = 150, int eventsOfAKind = 40, double slope = 0)
+    public StarFieldTrial(int side, int seed, double fwhm = 2.4, double sky = 120, int stars = 150, int eventsOfAKind = 40)
     {
         Side = side;
         random = new Random(seed);
@@ -44,7 +44,7 @@ internal sealed class StarFieldTrial
         for (int star = 0; star < stars; star++)
             Plant(fwhm, Math.Pow(10, 2.7 + (2.6 * random.NextDouble())), random.NextDouble() * side, random.NextDouble() * side);
         for (int i = 0; i < Light.Length; i++)
-            Light[i] = Stars[i] + sky + (slope * (i % side) * Gain);
+            Light[i] = Stars[i] + sky;
         BackgroundSigma = Noise.Sigma(0, 0, Pedestal + (sky / Gain));
         for (int i = 0; i < eventsOfAKind; i++)
         {
