@@ -91,7 +91,7 @@ public sealed class AdaptiveMedianFilter : IFilterPlugin
             Words = [Unstated],
             Meaning = "Full width at half maximum of a point source, or 0 where there are none, which limits the window to 3; "
                 + "must be stated unless polarity is dark, where it plays no part",
-            WhenRaised = "brighter and wider impulses are needed to tell them from sources; sharp sources may be lost",
+            WhenRaised = "more impulses are told from sources; sources sharper than stated are lost",
             WhenLowered = "sharper features pass as sources, so more impulses stay",
         },
         new()
