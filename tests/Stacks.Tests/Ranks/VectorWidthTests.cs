@@ -5,8 +5,8 @@ using System.Security.Cryptography;
 using Stacks.Abstractions;
 using Stacks.Filters.Ranks;
 using Stacks.Imaging;
-using Stacks.TestSupport;
 using Stacks.Tests.AdaptiveMedian;
+using Stacks.TestSupport;
 using Xunit;
 
 namespace Stacks.Tests.Ranks;
