@@ -37,9 +37,9 @@ internal sealed class RunAccount(RunPlan plan)
     }
 
     /// <summary>Makes the record.</summary>
-    public void Finish(string sourceDigest, string workDigest, DateTimeOffset created)
+    public void Finish(string sourceDigest, string workDigest, DateTimeOffset created, IReadOnlyList<string> damage)
     {
-        Warnings = [.. noise.Warnings(ledger.Count), .. FrameWarnings(), .. StepWarnings()];
+        Warnings = [.. damage, .. noise.Warnings(ledger.Count), .. FrameWarnings(), .. StepWarnings()];
         provenance = new ProvenanceRecord
         {
             Program = Software.Name,

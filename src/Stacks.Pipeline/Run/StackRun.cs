@@ -23,13 +23,15 @@ public static class StackRun
     {
         using CancellationTokenSource ended = CancellationTokenSource.CreateLinkedTokenSource(cancellation);
         Task<string> sourceDigest = Task.Run(() => Digests.OfFile(plan.Reader.Path, ended.Token), ended.Token);
+        Task<string[]> damage = Task.Run(
+            () => plan.Reader.CheckHealth(ended.Token).Where(f => f.IsProblem).Select(f => $"the source is damaged: {f.Text}").ToArray(), ended.Token);
         try
         {
             FrameMasks masks = new(plan, cancellation);
             string WorkDigest() => Digests.OfWork(plan, Software.Version, sourceDigest.GetAwaiter().GetResult(), masks.Files);
             if (OutputFiles.IsDone(plan, WorkDigest, cancellation))
                 return new RunResult(RunOutcome.AlreadyDone, null, [plan.OutputPath], []);
-            return Make(plan, masks, sourceDigest, WorkDigest, progress, sync, cancellation);
+            return Make(plan, masks, sourceDigest, damage, WorkDigest, progress, sync, cancellation);
         }
         finally
         {
@@ -41,6 +43,7 @@ public static class StackRun
         RunPlan plan,
         FrameMasks masks,
         Task<string> sourceDigest,
+        Task<string[]> damage,
         Func<string> workDigest,
         IProgress<RunProgress>? progress,
         Action<string> sync,
@@ -58,7 +61,7 @@ public static class StackRun
                 written = writer.Files;
                 OutputFiles.RefuseOthers(plan, written.Skip(1).Select(f => f.Final));
                 RunFrames(plan, masks, writer, account, progress, cancellation);
-                account.Finish(sourceDigest.GetAwaiter().GetResult(), workDigest(), created);
+                account.Finish(sourceDigest.GetAwaiter().GetResult(), workDigest(), created, damage.GetAwaiter().GetResult());
                 writer.Complete(account.Provenance, account.Ledger);
             }
 

@@ -46,6 +46,17 @@ public sealed class RunVerbTests : IDisposable
         Assert.Empty(Directory.GetFiles(bench.Out));
     }
 
+    /// <summary>astropy's own test file of a false checksum.</summary>
+    [NeedsFact(Needs.RealDataNeed)]
+    public void A_source_whose_checksum_does_not_agree_is_run_with_a_warning_that_stays_in_the_header()
+    {
+        ToolResult result = bench.Run(bench.Recipe(), RealData.File("bad", "checksum_false.fits"));
+
+        Assert.Equal(0, result.ExitCode);
+        Assert.Contains("DATASUM", result.Output, StringComparison.Ordinal);
+        Assert.Contains("note: the source is damaged", File.ReadAllText(Path.Combine(bench.Out, "checksum_false.fits"), System.Text.Encoding.Latin1), StringComparison.Ordinal);
+    }
+
     [Fact]
     public void A_second_run_finds_the_work_done_and_leaves_it()
     {
