@@ -20,7 +20,7 @@ internal sealed class FitsWriter : IStackWriter
     /// <summary>Creates the file under its partial name.</summary>
     public FitsWriter(WriteRequest request)
     {
-        if (request.Compress)
+        if (request.Compression != OutputCompression.None)
             throw new OutputException(request.Path, "compressed FITS is not written yet", "set [output] compression = \"none\" in the recipe");
         this.request = request;
         hdus = OutputPlan.Of(request);

@@ -24,6 +24,10 @@ public sealed class TiffFormat : IStackFormat
     public string? CannotStore(SampleType type) => null;
 
     /// <inheritdoc/>
+    public string? CannotCompress(OutputCompression compression) =>
+        compression == OutputCompression.Zstd ? "Zstandard is not written yet" : null;
+
+    /// <inheritdoc/>
     public IStackReader Open(string path, ReadOptions options) => TiffReader.Open(this, path, options);
 
     /// <inheritdoc/>

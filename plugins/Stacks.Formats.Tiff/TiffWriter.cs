@@ -33,7 +33,7 @@ internal sealed class TiffWriter : IStackWriter
         Files = files;
         bool bigEndian = source is { File.BigEndian: true };
         IsBig = source is { File.IsBig: true } || MayPass4GiB(TypeOf);
-        stack = new PageFile(files[0].Partial, bigEndian, IsBig, request.Compress);
+        stack = new PageFile(files[0].Partial, bigEndian, IsBig, request.Compression != OutputCompression.None);
         try
         {
             if (request.Mask)

@@ -21,6 +21,9 @@ public interface IStackFormat
     /// <summary>Why samples of a type cannot be written; null when they can.</summary>
     string? CannotStore(SampleType type);
 
+    /// <summary>Why results cannot be compressed in a way; null when they can.</summary>
+    string? CannotCompress(OutputCompression compression) => null;
+
     /// <summary>Opens a file and reads its structure, not its samples.</summary>
     /// <exception cref="StackFormatException">Broken, hostile, truncated, or of a kind that is refused by name.</exception>
     IStackReader Open(string path, ReadOptions options);
@@ -76,6 +79,15 @@ public interface IStackReader : IDisposable
 
     /// <summary>The format.</summary>
     IStackFormat Format { get; }
+
+    /// <summary>Paths of the further files whose frames belong to this stack; empty when all stands in one.</summary>
+    IReadOnlyList<string> OtherFiles => [];
+
+    /// <summary>
+    /// What is missing of a stack that was opened with <see cref="ReadOptions.AllowTruncated"/>, a sentence each with
+    /// frames and place; empty when it is whole.
+    /// </summary>
+    IReadOnlyList<string> Losses => [];
 
     /// <summary>Science frames in the file.</summary>
     int FrameCount { get; }
@@ -137,8 +149,11 @@ public sealed record WriteRequest
     /// <summary>Write the change mask (an extension of the file or a companion).</summary>
     public bool Mask { get; init; }
 
-    /// <summary>Compress losslessly.</summary>
-    public bool Compress { get; init; }
+    /// <summary>How samples are compressed.</summary>
+    public OutputCompression Compression { get; init; }
+
+    /// <summary>Write what the source holds beside its science frames (tables, error planes, thumbnails); else it is named as not carried.</summary>
+    public bool Carry { get; init; } = true;
 
     /// <summary>Stamp written as the time of making.</summary>
     public required DateTimeOffset Created { get; init; }

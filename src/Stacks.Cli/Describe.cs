@@ -12,6 +12,15 @@ internal static class Describe
     /// <summary>A count with its noun, in the plural where it is not 1.</summary>
     public static string Count(long count, string noun) => string.Create(CultureInfo.InvariantCulture, $"{count} {noun}{(count == 1 ? "" : "s")}");
 
+    /// <summary>How results are compressed.</summary>
+    public static string Name(OutputCompression compression) => compression switch
+    {
+        OutputCompression.None => "not compressed",
+        OutputCompression.Lossless => "compressed losslessly",
+        OutputCompression.Deflate => "compressed with Deflate",
+        _ => "compressed with Zstandard",
+    };
+
     /// <summary>Shape, sample type and what else is known of a frame.</summary>
     public static string Layout(FrameLayout layout)
     {

@@ -59,7 +59,7 @@ internal static class PlanReport
         }
 
         Line("output", $"{plan.OutputFormat.Id}, {string.Join(" | ", plan.Kinds.Select(k => k.Output.Name()).Distinct())}, "
-            + $"{(plan.Recipe.Output.Compress ? "compressed losslessly" : "not compressed")}, {(plan.WriteMask ? "with" : "without")} change mask"
+            + $"{Describe.Name(plan.Recipe.Output.Compression)}, {(plan.WriteMask ? "with" : "without")} change mask"
             + (plan.Overwrite ? ", replacing what is there" : ""));
         Line("machine", $"{plan.Workers} workers, {plan.FramesInFlight} frames in flight, {ByteSize.Show(plan.Memory!.For(plan.FramesInFlight))} needed "
             + $"of {ByteSize.Show(resources.MemoryBytes)} ({resources.MemoryOrigin})");
@@ -97,7 +97,7 @@ internal static class PlanReport
         InputFormat = plan.Reader.Format.Id,
         OutputFormat = plan.OutputFormat.Id,
         Frames = plan.Reader.FrameCount,
-        Compressed = plan.Recipe.Output.Compress,
+        Compression = Describe.Name(plan.Recipe.Output.Compression),
         ChangeMask = plan.WriteMask,
         plan.Workers,
         plan.FramesInFlight,

@@ -153,8 +153,14 @@ public sealed record OutputSection
     /// <summary>Where <c>format</c> stands, or the table where it is absent.</summary>
     public RecipePlace FormatPlace { get; init; }
 
-    /// <summary>Compress losslessly.</summary>
-    public bool Compress { get; init; }
+    /// <summary>How samples are compressed.</summary>
+    public OutputCompression Compression { get; init; }
+
+    /// <summary>Where <c>compression</c> stands, or the table where it is absent.</summary>
+    public RecipePlace CompressionPlace { get; init; }
+
+    /// <summary>Write what the source holds beside its science frames.</summary>
+    public bool Carry { get; init; } = true;
 
     /// <summary>Write the change mask; null for the default: written when a step is selective.</summary>
     public bool? Mask { get; init; }

@@ -23,7 +23,7 @@ public static class PassThrough
             Path = target,
             SampleTypeOf = frame => change?.Type ?? source.Layout(frame).SampleType,
             Mask = mask,
-            Compress = compress,
+            Compression = compress ? OutputCompression.Lossless : OutputCompression.None,
             Created = Created,
         };
         List<LedgerRow> ledger = [];

@@ -36,7 +36,7 @@ public static class OutputNaming
                 IStackFormat format = (asked ?? found).Format;
                 if (file is not null)
                     CheckEnding(file, format);
-                named.Add(new NamedOutput(input, found, file ?? Path.Combine(target, FileName(input, format, recipe.Output.Compress, catalogue)), null));
+                named.Add(new NamedOutput(input, found, file ?? Path.Combine(target, FileName(input, format, recipe.Output.Compression != OutputCompression.None, catalogue)), null));
             }
             catch (StacksException fault) when (fault is InputMissingException or StackFormatException or StackIOException)
             {

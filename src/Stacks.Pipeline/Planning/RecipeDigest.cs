@@ -46,7 +46,14 @@ internal static class RecipeDigest
         OutputSection output = recipe.Output;
         Line(text, "samples", output.Samples.ToString());
         Line(text, "format", output.Format ?? "same");
-        Line(text, "compress", output.Compress ? "lossless" : "none");
+        Line(text, "compress", output.Compression switch
+        {
+            OutputCompression.None => "none",
+            OutputCompression.Lossless => "lossless",
+            OutputCompression.Deflate => "deflate",
+            _ => "zstd",
+        });
+        Line(text, "carry", output.Carry ? "true" : "false");
         Line(text, "write mask", output.Mask?.ToString() ?? "auto");
         return text.ToString();
     }

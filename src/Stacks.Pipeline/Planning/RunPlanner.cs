@@ -70,6 +70,8 @@ public sealed class RunPlanner
     {
         if (plan.Reader.FrameCount == 0)
             throw new StackFormatException(plan.Reader.Path, "holds no science frame", "name its science extensions in [input] extensions, or another file");
+        if (plan.OutputFormat.CannotCompress(recipe.Output.Compression) is { } fault)
+            throw new RecipeException(recipe.Output.CompressionPlace.ToString(), $"{plan.OutputFormat.Id.ToUpperInvariant()} results cannot be compressed so: {fault}", "change [output] compression or format");
         IReadOnlyList<FrameKind> kinds = FrameKinds.Of(plan);
         FrameMasks masks = new(plan, CancellationToken.None);
         foreach (FrameKind kind in kinds)

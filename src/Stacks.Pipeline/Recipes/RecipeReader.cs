@@ -149,7 +149,7 @@ public static class RecipeReader
 
     private static OutputSection Output(TableReader table)
     {
-        table.Allow("samples", "format", "compression", "mask");
+        table.Allow("samples", "format", "compression", "mask", "carry");
         string? format = table.Text("format");
         return new OutputSection
         {
@@ -163,8 +163,16 @@ public static class RecipeReader
             SamplesPlace = table.PlaceOf("samples"),
             Format = format == "same" ? null : format,
             FormatPlace = table.PlaceOf("format"),
-            Compress = table.Word("compression", "none", "lossless") == "lossless",
+            Compression = table.Word("compression", "none", "lossless", "deflate", "zstd") switch
+            {
+                "lossless" => OutputCompression.Lossless,
+                "deflate" => OutputCompression.Deflate,
+                "zstd" => OutputCompression.Zstd,
+                _ => OutputCompression.None,
+            },
+            CompressionPlace = table.PlaceOf("compression"),
             Mask = table.Switch("mask"),
+            Carry = table.Switch("carry") ?? true,
         };
     }
 

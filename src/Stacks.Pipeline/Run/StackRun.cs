@@ -89,7 +89,8 @@ public static class StackRun
         Path = plan.OutputPath,
         SampleTypeOf = frame => plan.OutputTypeOf(plan.LayoutOf(frame)),
         Mask = plan.WriteMask,
-        Compress = plan.Recipe.Output.Compress,
+        Compression = plan.Recipe.Output.Compression,
+        Carry = plan.Recipe.Output.Carry,
         Created = created,
     };
 

@@ -79,7 +79,7 @@ public class RecipeReaderTests
         Assert.Equal(new RecipePlace("/night/recipes/red.toml", 27, 1), step.Places["threshold"]);
         Assert.Equal("other", recipe.Steps[1].Filter);
 
-        Assert.Equal((SampleChoice.Float32, "tiff", true, false), (recipe.Output.Samples, recipe.Output.Format, recipe.Output.Compress, recipe.Output.Mask));
+        Assert.Equal((SampleChoice.Float32, "tiff", OutputCompression.Lossless, false), (recipe.Output.Samples, recipe.Output.Format, recipe.Output.Compression, recipe.Output.Mask));
     }
 
     [Fact]

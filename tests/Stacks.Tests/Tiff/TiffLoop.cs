@@ -36,7 +36,7 @@ internal static class TiffLoop
             Path = path,
             SampleTypeOf = typeOf,
             Mask = mask,
-            Compress = compress,
+            Compression = compress ? OutputCompression.Lossless : OutputCompression.None,
             Created = Created,
         });
         List<LedgerRow> ledger = [];
