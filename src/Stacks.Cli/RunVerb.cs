@@ -23,11 +23,12 @@ internal static class RunVerb
         Option<int?> workers = new("--workers") { Description = "threads; default: what Slurm grants, else the processor count", HelpName = "N" };
         Option<string> memory = new("--memory") { Description = "memory the run may need, such as 4GiB; default: what Slurm grants, else 3/4 of the machine's", HelpName = "SIZE" };
         Option<bool> overwrite = new("--overwrite") { Description = "replace results that were made from other data, recipes or plugins" };
+        Option<bool> salvage = new("--salvage") { Description = "take the whole frames of truncated stacks; the report and the result name the missing ones" };
         Option<bool> dryRun = new("--dry-run") { Description = "print the plan and stop: write nothing" };
         Option<bool> json = CommonOptions.Json();
         verb.Arguments.Add(recipe);
         verb.Arguments.Add(stacks);
-        foreach (Option option in new Option[] { output, plugins, workers, memory, overwrite, dryRun, json })
+        foreach (Option option in new Option[] { output, plugins, workers, memory, overwrite, salvage, dryRun, json })
             verb.Options.Add(option);
         verb.SetAction(parsed => CommonOptions.WithJsonErrors(parsed.GetValue(json), () => Execute(
             parsed.GetRequiredValue(recipe),
@@ -36,6 +37,7 @@ internal static class RunVerb
             CommonOptions.Catalogue(parsed, plugins),
             Resources.Find(Workers(parsed.GetValue(workers)), ByteSize.Parse("--memory", parsed.GetValue(memory)), Environment.GetEnvironmentVariable),
             parsed.GetValue(overwrite),
+            parsed.GetValue(salvage),
             parsed.GetValue(dryRun),
             parsed.GetValue(json),
             parsed.GetValue(verbose))));
@@ -49,12 +51,13 @@ internal static class RunVerb
         PluginCatalogue catalogue,
         Resources resources,
         bool overwrite,
+        bool salvage,
         bool dryRun,
         bool json,
         bool verbose)
     {
         Recipe recipe = RecipeReader.Read(recipePath);
-        RunPlanner planner = new(recipe, catalogue, resources, overwrite);
+        RunPlanner planner = new(recipe, catalogue, resources, overwrite, salvage);
         IReadOnlyList<NamedOutput> items = OutputNaming.Name(stacks, output, recipe, catalogue);
         using StopSignals stop = new();
         IReadOnlyList<NightEntry> entries = dryRun

@@ -9,18 +9,25 @@ public sealed class RunPlanner
     private readonly PluginCatalogue catalogue;
     private readonly Resources resources;
     private readonly bool overwrite;
+    private readonly bool salvage;
     private readonly IReadOnlyList<PlannedStep> steps;
     private readonly string digest;
 
     /// <summary>Checks what needs no stack: filters, parameters, output format, mask and defect files.</summary>
+    /// <param name="recipe">The recipe.</param>
+    /// <param name="catalogue">The installed plugins.</param>
+    /// <param name="resources">Workers and memory.</param>
+    /// <param name="overwrite">Replace outputs that do not match.</param>
+    /// <param name="salvage">Take the whole frames of truncated stacks instead of refusing them.</param>
     /// <exception cref="RecipeException">The recipe does not fit the installed plugins.</exception>
     /// <exception cref="InputMissingException">A mask or defect file is not there.</exception>
-    public RunPlanner(Recipe recipe, PluginCatalogue catalogue, Resources resources, bool overwrite)
+    public RunPlanner(Recipe recipe, PluginCatalogue catalogue, Resources resources, bool overwrite, bool salvage = false)
     {
         this.recipe = recipe;
         this.catalogue = catalogue;
         this.resources = resources;
         this.overwrite = overwrite;
+        this.salvage = salvage;
         steps = StepBinder.Bind(recipe, catalogue);
         OutputNaming.OutputFormat(recipe, catalogue);
         foreach (string? file in new[] { recipe.Input.Mask, recipe.Input.Defects })
@@ -42,7 +49,7 @@ public sealed class RunPlanner
         CatalogueFormat output = OutputNaming.OutputFormat(recipe, catalogue) ?? input;
         RunPlan plan = new()
         {
-            Reader = input.Format.Open(item.Input, new ReadOptions { Extensions = recipe.Input.Extensions }),
+            Reader = input.Format.Open(item.Input, new ReadOptions { Extensions = recipe.Input.Extensions, AllowTruncated = salvage }),
             Recipe = recipe,
             RecipeDigest = digest,
             Steps = steps,

@@ -39,7 +39,7 @@ internal sealed class RunAccount(RunPlan plan)
     /// <summary>Makes the record.</summary>
     public void Finish(string sourceDigest, string workDigest, DateTimeOffset created, IReadOnlyList<string> damage)
     {
-        Warnings = [.. damage, .. noise.Warnings(ledger.Count), .. FrameWarnings(), .. StepWarnings()];
+        Warnings = [.. plan.Reader.Losses.Select(loss => "salvaged: " + loss), .. damage, .. noise.Warnings(ledger.Count), .. FrameWarnings(), .. StepWarnings()];
         provenance = new ProvenanceRecord
         {
             Program = Software.Name,
