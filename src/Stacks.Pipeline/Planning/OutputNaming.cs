@@ -5,9 +5,10 @@ namespace Stacks.Pipeline;
 /// <summary>An input and where its result goes.</summary>
 /// <param name="Input">Path as given.</param>
 /// <param name="Format">Format of the input; null when <paramref name="Fault"/> says why it is unknown.</param>
+/// <param name="OutputFormat">Format of the output; null where the input has a fault.</param>
 /// <param name="Output">Path of the output; empty where the input has a fault.</param>
 /// <param name="Fault">What is wrong with the input; null when its format is known.</param>
-public sealed record NamedOutput(string Input, CatalogueFormat? Format, string Output, StacksException? Fault);
+public sealed record NamedOutput(string Input, CatalogueFormat? Format, CatalogueFormat? OutputFormat, string Output, StacksException? Fault);
 
 /// <summary>
 /// Names one output for every input and refuses, before anything starts, names that would overwrite an input or each
@@ -17,7 +18,10 @@ public static class OutputNaming
 {
     /// <summary>Names the outputs; creates nothing.</summary>
     /// <param name="inputs">Input paths, one or more.</param>
-    /// <param name="target">What follows <c>-o</c>: a folder, or a file name when there is one input.</param>
+    /// <param name="target">
+    /// What follows <c>-o</c>: a folder, or a file name when there is one input; its ending decides the format where the
+    /// recipe does not.
+    /// </param>
     /// <param name="recipe">The recipe: its output format and compression.</param>
     /// <param name="catalogue">The formats.</param>
     /// <exception cref="RecipeException">The recipe's output format is not installed.</exception>
@@ -33,14 +37,15 @@ public static class OutputNaming
             try
             {
                 CatalogueFormat found = FormatFinder.Of(input, catalogue);
-                IStackFormat format = (asked ?? found).Format;
+                CatalogueFormat output = asked ?? (file is null ? found : catalogue.Formats.First(f => FormatNames.Carries(file, f.Format)));
+                IStackFormat format = output.Format;
                 if (file is not null)
                     CheckEnding(file, format);
-                named.Add(new NamedOutput(input, found, file ?? Path.Combine(target, FileName(input, format, recipe.Output.Compression != OutputCompression.None, catalogue)), null));
+                named.Add(new NamedOutput(input, found, output, file ?? Path.Combine(target, FileName(input, format, recipe.Output.Compression != OutputCompression.None, catalogue)), null));
             }
             catch (StacksException fault) when (fault is InputMissingException or StackFormatException or StackIOException)
             {
-                named.Add(new NamedOutput(input, null, "", fault));
+                named.Add(new NamedOutput(input, null, null, "", fault));
             }
         }
 
@@ -85,8 +90,8 @@ public static class OutputNaming
     {
         if (!FormatNames.Carries(file, format))
         {
-            throw new UsageException($"-o {file}", $"the output will be {format.Id.ToUpperInvariant()}, and the name's ending promises another format",
-                $"end the name with {format.Extension}, or change [output] format in the recipe");
+            throw new UsageException($"-o {file}", $"the recipe asks for {format.Id.ToUpperInvariant()}, and the name's ending promises another format",
+                $"end the name with {format.Extension}, or leave [output] format out of the recipe");
         }
     }
 

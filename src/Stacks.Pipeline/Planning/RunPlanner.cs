@@ -46,7 +46,7 @@ public sealed class RunPlanner
         if (item.Fault is not null)
             throw item.Fault;
         CatalogueFormat input = item.Format!;
-        CatalogueFormat output = OutputNaming.OutputFormat(recipe, catalogue) ?? input;
+        CatalogueFormat output = item.OutputFormat!;
         RunPlan plan = new()
         {
             Reader = input.Format.Open(item.Input, new ReadOptions { Extensions = recipe.Input.Extensions, AllowTruncated = salvage }),

@@ -43,6 +43,8 @@ public sealed class OutputNamingTests : IDisposable
 
         Assert.Equal(bench.File("b.sk"), bench.Name("", bench.File("b.sk"), input)[0].Output);
         Assert.Equal(bench.File("b.cell"), bench.Name("[output]\nformat = \"cell\"", bench.File("b.cell"), input)[0].Output);
+        Assert.Equal("cell", bench.Name("", bench.File("b.cell"), input)[0].OutputFormat!.Format.Id);
+        Assert.Equal("sky", bench.Name("", bench.File("b.sky"), input)[0].OutputFormat!.Format.Id);
         Assert.Equal(Path.Combine(bench.File("b"), "a.sky"), bench.Name("", bench.File("b"), input)[0].Output);
         Assert.Equal(Path.Combine(bench.File("b.sky/"), "a.sky"), bench.Name("", bench.File("b.sky/"), input)[0].Output);
     }
@@ -60,7 +62,7 @@ public sealed class OutputNamingTests : IDisposable
         string a = bench.Put("a.sky", "sky"), b = bench.Put("b.sky", "sky");
 
         Assert.Contains("names one file for 2 inputs", Assert.Throws<UsageException>(() => bench.Name("", bench.File("c.sky"), a, b)).Message, StringComparison.Ordinal);
-        Assert.Contains("end the name with .sky", Assert.Throws<UsageException>(() => bench.Name("", bench.File("c.cell"), a)).Message, StringComparison.Ordinal);
+        Assert.Contains("end the name with .sky", Assert.Throws<UsageException>(() => bench.Name("[output]\nformat = \"sky\"", bench.File("c.cell"), a)).Message, StringComparison.Ordinal);
     }
 
     [Theory]
