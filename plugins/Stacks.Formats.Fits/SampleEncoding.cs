@@ -1,4 +1,3 @@
-using System.Buffers.Binary;
 using System.Numerics;
 using System.Runtime.InteropServices;
 using Stacks.Abstractions;
@@ -11,9 +10,6 @@ namespace Stacks.Formats.Fits;
 /// </summary>
 internal static class SampleEncoding
 {
-    /// <summary>Bytes that are swapped and inverted while they are in the nearest cache.</summary>
-    private const int ChunkBytes = 16384;
-
     /// <summary>The BITPIX of a type that FITS can hold.</summary>
     public static int BitPix(SampleType type) => type switch
     {
@@ -53,68 +49,62 @@ internal static class SampleEncoding
         _ => 0,
     };
 
-    /// <summary>Bytes of a data unit to stored samples, little-endian. The spans have one length and do not overlap.</summary>
-    public static void Decode(SampleType type, ReadOnlySpan<byte> data, Span<byte> stored)
-    {
-        for (int at = 0; at < data.Length; at += ChunkBytes)
-        {
-            int length = Math.Min(ChunkBytes, data.Length - at);
-            Span<byte> chunk = stored.Slice(at, length);
-            Swap(type, data.Slice(at, length), chunk);
-            if (Shift(type) != 0)
-                InvertTopBits(type, chunk);
-        }
-    }
+    /// <summary>Bytes of a data unit to stored samples, little-endian. The spans have one length; they may be the same.</summary>
+    public static void Decode(SampleType type, ReadOnlySpan<byte> data, Span<byte> stored) => Reverse(type, data, stored, type.Size() - 1);
 
-    /// <summary>Stored samples, little-endian, to bytes of a data unit. The stored samples are overwritten.</summary>
-    public static void Encode(SampleType type, Span<byte> stored, Span<byte> data)
-    {
-        for (int at = 0; at < stored.Length; at += ChunkBytes)
-        {
-            int length = Math.Min(ChunkBytes, stored.Length - at);
-            Span<byte> chunk = stored.Slice(at, length);
-            if (Shift(type) != 0)
-                InvertTopBits(type, chunk);
-            Swap(type, chunk, data.Slice(at, length));
-        }
-    }
+    /// <summary>Stored samples, little-endian, to bytes of a data unit. The spans have one length; they may be the same.</summary>
+    public static void Encode(SampleType type, ReadOnlySpan<byte> stored, Span<byte> data) => Reverse(type, stored, data, 0);
 
-    private static void Swap(SampleType type, ReadOnlySpan<byte> from, Span<byte> to)
+    /// <summary>
+    /// Reverses the bytes of each sample; then adds or takes half the range, in integer arithmetic, where the type has a
+    /// sign convention: its top bit, which is then in byte <paramref name="top"/>, is inverted.
+    /// </summary>
+    private static void Reverse(SampleType type, ReadOnlySpan<byte> from, Span<byte> to, int top)
     {
-        switch (type.Size())
-        {
-            case 1:
-                from.CopyTo(to);
-                break;
-            case 2:
-                BinaryPrimitives.ReverseEndianness(MemoryMarshal.Cast<byte, ushort>(from), MemoryMarshal.Cast<byte, ushort>(to));
-                break;
-            case 4:
-                BinaryPrimitives.ReverseEndianness(MemoryMarshal.Cast<byte, uint>(from), MemoryMarshal.Cast<byte, uint>(to));
-                break;
-            default:
-                BinaryPrimitives.ReverseEndianness(MemoryMarshal.Cast<byte, ulong>(from), MemoryMarshal.Cast<byte, ulong>(to));
-                break;
-        }
-    }
-
-    /// <summary>Adds or takes half the range in integer arithmetic: inverts the top bit of every little-endian sample.</summary>
-    private static void InvertTopBits(SampleType type, Span<byte> samples)
-    {
+        byte flip = Shift(type) != 0 ? (byte)0x80 : (byte)0;
         int size = type.Size();
-        ulong pattern = size switch
+        int done = size switch
         {
-            1 => 0x8080_8080_8080_8080,
-            2 => 0x8000_8000_8000_8000,
-            4 => 0x8000_0000_8000_0000,
-            _ => 0x8000_0000_0000_0000,
+            1 => ReverseVectors(from, to, flip),
+            2 => ReverseVectors(from, to, (ushort)(flip << (8 * top))),
+            4 => ReverseVectors(from, to, (uint)flip << (8 * top)),
+            _ => ReverseVectors(from, to, (ulong)flip << (8 * top)),
         };
+        Span<byte> sample = stackalloc byte[8];
+        for (int i = done; i < from.Length; i += size)
+        {
+            from.Slice(i, size).CopyTo(sample);
+            for (int b = 0; b < size; b++)
+                to[i + b] = sample[size - 1 - b];
+            to[i + top] ^= flip;
+        }
+    }
 
-        Span<Vector<ulong>> wide = MemoryMarshal.Cast<byte, Vector<ulong>>(samples);
-        Vector<ulong> patterns = new(pattern);
-        for (int i = 0; i < wide.Length; i++)
-            wide[i] ^= patterns;
-        for (int i = (wide.Length * Vector<byte>.Count) + size - 1; i < samples.Length; i += size)
-            samples[i] ^= 0x80;
+    /// <summary>The same for as many whole vectors as there are; returns the bytes done.</summary>
+    private static int ReverseVectors<T>(ReadOnlySpan<byte> from, Span<byte> to, T flip)
+        where T : unmanaged
+    {
+        ReadOnlySpan<Vector<T>> source = MemoryMarshal.Cast<byte, Vector<T>>(from);
+        Span<Vector<T>> target = MemoryMarshal.Cast<byte, Vector<T>>(to);
+        Vector<T> flips = new(flip);
+        for (int i = 0; i < source.Length; i++)
+            target[i] = ReverseBytes(source[i]) ^ flips;
+        return source.Length * Vector<byte>.Count;
+    }
+
+    /// <summary>Bytes change places inside 16 bits, then pairs inside 32, then fours inside 64, as far as the sample is wide.</summary>
+    private static unsafe Vector<T> ReverseBytes<T>(Vector<T> samples)
+        where T : unmanaged
+    {
+        Vector<ushort> halves = samples.As<T, ushort>();
+        if (sizeof(T) >= 2)
+            halves = (halves << 8) | (halves >>> 8);
+        Vector<uint> words = halves.As<ushort, uint>();
+        if (sizeof(T) >= 4)
+            words = (words << 16) | (words >>> 16);
+        Vector<ulong> longs = words.As<uint, ulong>();
+        if (sizeof(T) >= 8)
+            longs = (longs << 32) | (longs >>> 32);
+        return longs.As<ulong, T>();
     }
 }
