@@ -33,7 +33,7 @@ internal static class CarriedFields
         or Tag.StripOffsets or Tag.SamplesPerPixel or Tag.RowsPerStrip or Tag.StripByteCounts or Tag.PlanarConfiguration
         or Tag.FreeOffsets or Tag.FreeByteCounts or Tag.Predictor or Tag.ColorMap
         or Tag.TileWidth or Tag.TileLength or Tag.TileOffsets or Tag.TileByteCounts
-        or Tag.ExtraSamples or Tag.SampleFormat or Tag.JpegTables or (>= Tag.OldJpegFirst and <= Tag.OldJpegLast);
+        or Tag.SampleFormat or Tag.JpegTables or (>= Tag.OldJpegFirst and <= Tag.OldJpegLast);
 
     private static bool IsStatistic(ushort tag) =>
         tag is Tag.MinSampleValue or Tag.MaxSampleValue or Tag.SMinSampleValue or Tag.SMaxSampleValue;

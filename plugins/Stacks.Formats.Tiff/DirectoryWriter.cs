@@ -31,8 +31,9 @@ internal sealed class DirectoryWriter(OutputFileStream output, bool bigEndian, b
     /// <summary>Sets the place of the first directory. Everything before must have been flushed.</summary>
     public void PatchFirst(long offset) => output.WriteAt(isBig ? 8 : 4, Bytes(offset, offsetSize));
 
-    /// <summary>A field of 16-bit numbers.</summary>
-    public OutputField Short(ushort tag, int value) => new(tag, FieldType.Short, 1, Bytes(value, 2));
+    /// <summary>A field of one 16-bit number, said as often as there are samples in a pixel.</summary>
+    public OutputField Short(ushort tag, int value, int times = 1) =>
+        new(tag, FieldType.Short, times, [.. Enumerable.Repeat(Bytes(value, 2), times).SelectMany(b => b)]);
 
     /// <summary>A field of 32-bit numbers.</summary>
     public OutputField Long(ushort tag, params ReadOnlySpan<long> values) => Numbers(tag, FieldType.Long, values);

@@ -4,12 +4,13 @@ namespace Stacks.Formats.Tiff;
 
 /// <summary>
 /// Predictor 3: the bytes of a row's samples are sorted by significance, most significant first whatever the file's byte
-/// order, and then differenced byte by byte (Adobe Photoshop TIFF Technical Note 3, 2005). Samples are little-endian.
+/// order, and then differenced byte by byte (Adobe Photoshop TIFF Technical Note 3, 2005); where n samples of a pixel stand
+/// side by side, bytes n apart are differenced. Samples are little-endian.
 /// </summary>
 internal static class FloatingPointPredictor
 {
     /// <summary>Turns stored rows into little-endian samples, in place.</summary>
-    public static void Undo(Span<byte> bytes, int rowBytes, int size)
+    public static void Undo(Span<byte> bytes, int rowBytes, int size, int n)
     {
         int samples = rowBytes / size;
         byte[] rented = ArrayPool<byte>.Shared.Rent(rowBytes);
@@ -17,12 +18,9 @@ internal static class FloatingPointPredictor
         for (int at = 0; at < bytes.Length; at += rowBytes)
         {
             Span<byte> row = bytes.Slice(at, rowBytes);
-            byte sum = 0;
-            for (int i = 0; i < rowBytes; i++)
-            {
-                sum += row[i];
-                sorted[i] = sum;
-            }
+            row[..n].CopyTo(sorted);
+            for (int i = n; i < rowBytes; i++)
+                sorted[i] = (byte)(row[i] + sorted[i - n]);
 
             for (int b = 0; b < size; b++)
             {
@@ -35,7 +33,7 @@ internal static class FloatingPointPredictor
         ArrayPool<byte>.Shared.Return(rented);
     }
 
-    /// <summary>Turns little-endian samples into stored rows, in place.</summary>
+    /// <summary>Turns little-endian samples of one plane into stored rows, in place.</summary>
     public static void Apply(Span<byte> bytes, int rowBytes, int size)
     {
         int samples = rowBytes / size;

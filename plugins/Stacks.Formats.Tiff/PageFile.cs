@@ -12,7 +12,7 @@ internal sealed class PageFile : IDisposable
     private readonly OutputFileStream output;
     private readonly DirectoryWriter writer;
     private readonly bool bigEndian;
-    private readonly bool compress;
+    private readonly Compression compression;
     private readonly List<(long Offset, int[]? Counts)> placed = [];
     private long firstDirectory;
 
@@ -20,11 +20,11 @@ internal sealed class PageFile : IDisposable
     /// <param name="path">Path.</param>
     /// <param name="bigEndian">Byte order.</param>
     /// <param name="isBig">BigTIFF.</param>
-    /// <param name="compress">Deflate for science pages.</param>
-    public PageFile(string path, bool bigEndian, bool isBig, bool compress)
+    /// <param name="compression">Compression of science pages: none, Deflate or Zstandard.</param>
+    public PageFile(string path, bool bigEndian, bool isBig, Compression compression)
     {
         this.bigEndian = bigEndian;
-        this.compress = compress;
+        this.compression = compression;
         output = new OutputFileStream(path);
         writer = new DirectoryWriter(output, bigEndian, isBig);
         writer.WriteHeader();
@@ -35,13 +35,13 @@ internal sealed class PageFile : IDisposable
 
     /// <summary>Makes the bytes of a frame. Safe for concurrent use.</summary>
     public void Encode(FrameLayout frame, SampleType type, Span<byte> stored, ByteBuffer bytes) =>
-        SegmentCodec.Encode(Strips(frame, type), compress ? PredictorFor(type) : 0, bigEndian, stored, bytes);
+        SegmentCodec.Encode(Strips(frame, type), compression, PredictorFor(type), bigEndian, stored, bytes);
 
     /// <summary>Appends the image data of the next frame.</summary>
     public void Append(FrameLayout frame, SampleType type, ReadOnlySpan<byte> bytes)
     {
         int[]? counts = null;
-        if (compress)
+        if (compression != Compression.None)
         {
             int table = 4 * (int)Strips(frame, type).Count;
             counts = MemoryMarshal.Cast<byte, int>(bytes[^table..]).ToArray();
@@ -76,31 +76,39 @@ internal sealed class PageFile : IDisposable
         return [writer.Offsets(tiled ? Tag.TileOffsets : Tag.StripOffsets, offsets), writer.Long(tiled ? Tag.TileByteCounts : Tag.StripByteCounts, counts)];
     }
 
-    /// <summary>The fields that say how a frame is stored.</summary>
-    public IEnumerable<OutputField> ImageFields(int frame, FrameLayout layout, SampleType type)
+    /// <summary>The fields that say how a page is stored.</summary>
+    /// <param name="frame">The page's first frame.</param>
+    /// <param name="layout">Its layout.</param>
+    /// <param name="type">Sample type of all its frames.</param>
+    /// <param name="samples">Samples of a pixel: frames that follow each other as the planes of the page.</param>
+    public IEnumerable<OutputField> ImageFields(int frame, FrameLayout layout, SampleType type, int samples = 1)
     {
         SegmentGrid grid = Strips(layout, type);
-        (long at, int[]? lengths) = placed[frame];
-        long[] offsets = new long[grid.Count];
-        long[] counts = new long[grid.Count];
-        for (int i = 0; i < offsets.Length; i++)
+        int strips = (int)grid.Count;
+        long[] offsets = new long[samples * strips];
+        long[] counts = new long[samples * strips];
+        for (int s = 0; s < samples; s++)
         {
-            offsets[i] = at;
-            counts[i] = lengths?[i] ?? grid.BytesOf(i);
-            at += counts[i];
+            (long at, int[]? lengths) = placed[frame + s];
+            for (int i = 0; i < strips; i++)
+            {
+                offsets[(s * strips) + i] = at;
+                counts[(s * strips) + i] = lengths?[i] ?? grid.BytesOf(i);
+                at += counts[(s * strips) + i];
+            }
         }
 
         yield return writer.Long(Tag.ImageWidth, layout.Width);
         yield return writer.Long(Tag.ImageLength, layout.Height);
-        yield return writer.Short(Tag.BitsPerSample, 8 * type.Size());
-        yield return writer.Short(Tag.Compression, compress ? (int)Compression.Deflate : (int)Compression.None);
+        yield return writer.Short(Tag.BitsPerSample, 8 * type.Size(), samples);
+        yield return writer.Short(Tag.Compression, (int)compression);
         yield return writer.Offsets(Tag.StripOffsets, offsets);
-        yield return writer.Short(Tag.SamplesPerPixel, 1);
+        yield return writer.Short(Tag.SamplesPerPixel, samples);
         yield return writer.Long(Tag.RowsPerStrip, grid.SegmentHeight);
         yield return writer.Long(Tag.StripByteCounts, counts);
-        yield return writer.Short(Tag.PlanarConfiguration, 1);
-        yield return writer.Short(Tag.SampleFormat, SampleFormatOf(type));
-        if (compress && PredictorFor(type) != 1)
+        yield return writer.Short(Tag.PlanarConfiguration, samples == 1 ? 1 : 2);
+        yield return writer.Short(Tag.SampleFormat, SampleFormatOf(type), samples);
+        if (compression != Compression.None)
             yield return writer.Short(Tag.Predictor, PredictorFor(type));
     }
 

@@ -13,10 +13,11 @@ internal readonly record struct Page(long Directory, PageLayout Layout, long Off
 /// <summary>
 /// The pages of a file, found in one walk over the chain of directories. Only offsets are kept: 32 bytes a page. The
 /// walk ends on hostile chains too: no directory is visited twice, and directories and segment tables together may not
-/// be longer than four times the file.
+/// be longer than four times the file, nor may the image data of all pages.
 /// </summary>
 internal sealed class PageIndex
 {
+    private const int MostFrames = 1 << 23;
     private const string CopyAgain = "copy it again from its source";
     private readonly List<Page> pages = [];
     private readonly Dictionary<PageLayout, PageLayout> layouts = [];
@@ -24,6 +25,7 @@ internal sealed class PageIndex
     private readonly FileWindow window;
     private readonly SegmentTable table;
     private long budget;
+    private long frames;
 
     private PageIndex(TiffFile file)
     {
@@ -100,6 +102,9 @@ internal sealed class PageIndex
         long offsetsAt = directory.Find(tiled ? Tag.TileOffsets : Tag.StripOffsets)?.ValueAt ?? -1;
         long countsAt = directory.Find(tiled ? Tag.TileByteCounts : Tag.StripByteCounts)?.ValueAt ?? -1;
         Page page = new(offset, layout, offsetsAt, countsAt);
+        frames += layout.Samples;
+        if (frames > MostFrames)
+            throw new StackFormatException(directory.Where, $"the stack has more than {MostFrames} frames", "split it");
         Spend((long)layout.Segments * (layout.OffsetType.Size() + layout.CountType.Size()), directory.Where);
         CheckSegments(page, directory.Where);
         return page;
@@ -124,6 +129,9 @@ internal sealed class PageIndex
                     CopyAgain);
         }
 
+        // Pages that share image data are conceivable; a few bytes that stand for a mountain of frames are an attack.
+        if (ImageBytes + total > 4 * file.Length)
+            throw new StackFormatException(where, "the image data of the pages lie over each other", CopyAgain);
         if (total > file.Length || total > Array.MaxLength - (4L * layout.Segments))
             throw new StackFormatException(where, string.Create(CultureInfo.InvariantCulture, $"the page claims {total} bytes of image data"), CopyAgain);
         ImageBytes += total;

@@ -9,14 +9,19 @@ internal enum Compression
     None = 1,
     Lzw = 5,
     Deflate = 8,
+    PackBits = 32773,
     OldDeflate = 32946,
+    Zstd = 50000,
 }
 
 /// <summary>Everything pages that are alike share; one instance for all of them.</summary>
 internal sealed record PageLayout
 {
-    /// <summary>Shape and sample type; null for a thumbnail, whose bytes are carried as they stand.</summary>
+    /// <summary>Shape and sample type of each sample's plane; null for a thumbnail, whose bytes are carried as they stand.</summary>
     public FrameLayout? Frame { get; init; }
+
+    /// <summary>Samples of a pixel, each a frame of its own; 0 for a thumbnail.</summary>
+    public int Samples { get; init; }
 
     /// <summary>Strips or tiles; undefined for a thumbnail.</summary>
     public SegmentGrid Grid { get; init; }
@@ -47,22 +52,35 @@ internal sealed record PageLayout
 
     /// <summary>
     /// The most bytes one compressed byte can stand for. Deflate: 258 bytes in two bits (RFC 1951) is 1032. LZW: strings
-    /// of at most 4096 - 258 bytes in 12 bits is below 2560. A page that claims more is a bomb, known before it is read.
+    /// of at most 4096 - 258 bytes in 12 bits is below 2560. PackBits: 128 bytes in two. Zstandard: a block of 128 KiB in four
+    /// (RFC 8878, section 3.1.1.2). A page that claims more is a bomb, known before it is read.
     /// </summary>
     public long LargestRatio => Compression switch
     {
         Compression.None => 1,
         Compression.Lzw => 2560,
+        Compression.PackBits => 64,
+        Compression.Zstd => 32768,
         _ => 1032,
     };
 
     /// <summary>Compression and predictor, for people.</summary>
-    public string Coding => (Compression, Predictor) switch
+    public string Coding
     {
-        (Compression.None, _) => "uncompressed",
-        (Compression.Lzw, 1) => "LZW",
-        (Compression.Lzw, _) => string.Create(CultureInfo.InvariantCulture, $"LZW with predictor {Predictor}"),
-        (_, 1) => "Deflate",
-        _ => string.Create(CultureInfo.InvariantCulture, $"Deflate with predictor {Predictor}"),
-    };
+        get
+        {
+            string scheme = Compression switch
+            {
+                Compression.None => "uncompressed",
+                Compression.Lzw => "LZW",
+                Compression.PackBits => "PackBits",
+                Compression.Zstd => "Zstandard",
+                _ => "Deflate",
+            };
+            return Predictor == 1 ? scheme : string.Create(CultureInfo.InvariantCulture, $"{scheme} with predictor {Predictor}");
+        }
+    }
+
+    /// <summary>The layout of one sample's plane. A page of one sample has no channels of its own.</summary>
+    public FrameLayout FrameOf(int sample) => Samples == 1 ? Frame! : Frame! with { Channel = sample };
 }

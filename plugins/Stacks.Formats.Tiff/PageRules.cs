@@ -6,6 +6,12 @@ namespace Stacks.Formats.Tiff;
 /// <summary>Makes the layout of a page from its directory, or refuses the page by name.</summary>
 internal sealed class PageRules(TiffDirectory directory, FileWindow window)
 {
+    /// <summary>Bounds the memory of a page's table of segments (16 bytes each).</summary>
+    private const int MostSegments = 1 << 21;
+
+    /// <summary>Bytes up to which a tile may be any number of times larger than its page.</summary>
+    private const long LargestPadded = 1 << 24;
+
     private const string SaveAgain = "save the stack uncompressed or with Deflate or LZW";
 
     /// <summary>The layout of the page.</summary>
@@ -26,7 +32,7 @@ internal sealed class PageRules(TiffDirectory directory, FileWindow window)
 
     private PageLayout Thumbnail(TiffField? offsets, TiffField? counts)
     {
-        bool carried = Number(Tag.Compression, 1) != 6 && offsets is { Count: <= 1 << 24 } && counts is { } c && c.Count >= offsets.Value.Count;
+        bool carried = Number(Tag.Compression, 1) != 6 && offsets is { Count: <= MostSegments } && counts is { } c && c.Count >= offsets.Value.Count;
         return new PageLayout
         {
             Carried = carried,
@@ -40,7 +46,9 @@ internal sealed class PageRules(TiffDirectory directory, FileWindow window)
     private PageLayout Science(TiffField offsets, TiffField? counts, bool tiled)
     {
         RefuseOtherKinds();
-        SampleType type = TypeOfSamples();
+        long samples = Number(Tag.SamplesPerPixel, 1);
+        SampleType type = TypeOfSamples(samples);
+        bool planar = samples > 1 && Number(Tag.PlanarConfiguration, 1) == 2;
         int width = Side(Tag.ImageWidth);
         int height = Side(Tag.ImageLength);
         if ((long)width * height > Array.MaxLength / type.Size())
@@ -50,11 +58,13 @@ internal sealed class PageRules(TiffDirectory directory, FileWindow window)
         int segmentHeight = tiled ? Side(Tag.TileLength) : (int)Math.Min(Number(Tag.RowsPerStrip, uint.MaxValue), height);
         if (segmentHeight < 1)
             throw Broken(Tag.RowsPerStrip, "a strip has no rows");
-        SegmentGrid grid = new(width, height, segmentWidth, segmentHeight, type.Size(), tiled);
-        if (grid.RowBytes * segmentHeight > Array.MaxLength)
-            throw Refused(Tag.TileWidth, $"a {grid.Word} of {segmentWidth} x {segmentHeight} samples is larger than 2 GiB", "save the stack with smaller ones");
-        if (grid.Count > Array.MaxLength / 8)
-            throw Refused(offsets.Tag, $"the page is cut into more than {Array.MaxLength / 8} {grid.Word}s", "save the stack with larger ones");
+        SegmentGrid grid = new(width, height, segmentWidth, segmentHeight, type.Size(), tiled, planar ? 1 : (int)samples, planar ? (int)samples : 1);
+        if (grid.RowBytes > Array.MaxLength / segmentHeight)
+            throw Refused(Tag.TileWidth, $"a {grid.Word} of {segmentWidth} x {segmentHeight} pixels is larger than 2 GiB", "save the stack with smaller ones");
+        if (grid.RowBytes * segmentHeight > Math.Max(LargestPadded, 4L * width * height * grid.SampleSize * grid.Chunk))
+            throw Broken(Tag.TileWidth, string.Create(CultureInfo.InvariantCulture, $"a tile of {segmentWidth} x {segmentHeight} pixels is far larger than the page of {width} x {height}"));
+        if (grid.Count > MostSegments)
+            throw Refused(offsets.Tag, $"the page is cut into more than {MostSegments} {grid.Word}s", "save the stack with larger ones");
         if (offsets.Count < grid.Count)
             throw Broken(offsets.Tag, string.Create(CultureInfo.InvariantCulture, $"the page needs {grid.Count} {grid.Word}s and lists {offsets.Count}"));
 
@@ -75,6 +85,7 @@ internal sealed class PageRules(TiffDirectory directory, FileWindow window)
                 SaturationStored = type.IsInteger() ? type.Maximum() : null,
                 Lattice = Mosaic(width, height),
             },
+            Samples = (int)samples,
             Grid = grid,
             Compression = compression,
             Predictor = KindOfPredictor(compression, type),
@@ -82,26 +93,30 @@ internal sealed class PageRules(TiffDirectory directory, FileWindow window)
             Segments = (int)grid.Count,
             OffsetType = offsets.Type,
             CountType = counts?.Type ?? default,
-            Shape = $"{width} x {height} {type.Name()}",
+            Shape = samples == 1 ? $"{width} x {height} {type.Name()}" : $"{width} x {height} {type.Name()}, {samples} samples a pixel",
         };
     }
 
     private void RefuseOtherKinds()
     {
         long samples = Number(Tag.SamplesPerPixel, 1);
-        if (samples != 1)
-            throw Refused(Tag.SamplesPerPixel, $"{samples} samples per pixel (colour, or several planes in one page) are not read yet", "save each sample as a page of its own");
+        if (samples is < 1 or > ushort.MaxValue)
+            throw Broken(Tag.SamplesPerPixel, $"{samples} samples per pixel");
+        if (samples > 1 && Number(Tag.PlanarConfiguration, 1) is not (1 or 2))
+            throw Broken(Tag.PlanarConfiguration, "the samples of a pixel are neither side by side (1) nor in planes (2)");
         long photometric = Number(Tag.Photometric, 1);
-        if (photometric is not (0 or 1 or 32803 or 34892))
+        if (samples > 1 && photometric == 32803)
+            throw Broken(Tag.SamplesPerPixel, $"{samples} samples per pixel in a colour-filter mosaic");
+        if (photometric is not (0 or 1 or 2 or 32803 or 34892))
             throw Refused(Tag.Photometric, $"the page holds {PhotometricName(photometric)}, not linear light", "save the measured values as greyscale");
         if (Number(Tag.FillOrder, 1) != 1)
             throw Refused(Tag.FillOrder, "the bits of each byte are stored in reverse (FillOrder 2)", "save the stack with FillOrder 1");
     }
 
-    private SampleType TypeOfSamples()
+    private SampleType TypeOfSamples(long samples)
     {
-        long bits = Number(Tag.BitsPerSample, 1);
-        long format = Number(Tag.SampleFormat, 1);
+        long bits = SameForAll(Tag.BitsPerSample, samples);
+        long format = SameForAll(Tag.SampleFormat, samples);
         return (format, bits) switch
         {
             (1 or 4, 8) => SampleType.UInt8,
@@ -128,18 +143,21 @@ internal sealed class PageRules(TiffDirectory directory, FileWindow window)
         5 => Compression.Lzw,
         8 => Compression.Deflate,
         32946 => Compression.OldDeflate,
-        32773 => throw Refused(Tag.Compression, "PackBits compression is not read yet", SaveAgain),
-        50000 => throw Refused(Tag.Compression, "Zstandard compression is not read yet", SaveAgain),
+        32773 => Compression.PackBits,
+        50000 => Compression.Zstd,
         6 => throw Refused(Tag.Compression, "old-style JPEG compression is not read and its values are not exact", SaveAgain),
         7 => throw Refused(Tag.Compression, "JPEG compression is not read and its values are seldom exact", SaveAgain),
         2 or 3 or 4 => throw Refused(Tag.Compression, "CCITT fax compression (1-bit images) is not read", SaveAgain),
         long other => throw Refused(Tag.Compression, $"compression scheme {other} is not read", SaveAgain),
     };
 
-    /// <summary>A predictor goes with LZW and Deflate only: without compression the field means nothing (TIFF 6.0, section 14).</summary>
+    /// <summary>
+    /// A predictor goes with LZW, Deflate and Zstandard only: elsewhere the field means nothing (TIFF 6.0, section 14; common
+    /// practice for the two others).
+    /// </summary>
     private int KindOfPredictor(Compression compression, SampleType type)
     {
-        if (compression == Compression.None)
+        if (compression is Compression.None or Compression.PackBits)
             return 1;
         return Number(Tag.Predictor, 1) switch
         {
@@ -167,7 +185,6 @@ internal sealed class PageRules(TiffDirectory directory, FileWindow window)
 
     private static string PhotometricName(long photometric) => photometric switch
     {
-        2 => "RGB colour",
         3 => "palette indices",
         4 => "a transparency mask",
         5 => "ink amounts (CMYK)",
@@ -175,6 +192,21 @@ internal sealed class PageRules(TiffDirectory directory, FileWindow window)
         8 or 9 or 10 => "CIE L*a*b* colour",
         _ => $"photometric interpretation {photometric}",
     };
+
+    /// <summary>A field with a value for each sample of a pixel, which must be alike; 1 where it is absent.</summary>
+    private long SameForAll(ushort tag, long samples)
+    {
+        long first = Number(tag, 1);
+        if (directory.Find(tag) is not { Count: > 1 } field)
+            return first;
+        for (int i = 1; i < Math.Min(field.Count, samples); i++)
+        {
+            if (directory.Value(window, field, i) is long other && other != first)
+                throw Refused(tag, $"the samples of a pixel differ: {first} and {other}", "save each sample as a page of its own");
+        }
+
+        return first;
+    }
 
     private int Side(ushort tag)
     {

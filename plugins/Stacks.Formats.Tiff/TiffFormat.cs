@@ -3,8 +3,9 @@ using Stacks.Abstractions;
 namespace Stacks.Formats.Tiff;
 
 /// <summary>
-/// TIFF 6.0 and BigTIFF in both byte orders, plain and OME-TIFF: pages of one sample per pixel, 8 to 64-bit integers and
-/// 16 to 64-bit floats, strips or tiles, uncompressed, Deflate or LZW, predictors 1 to 3.
+/// TIFF 6.0 and BigTIFF in both byte orders, plain and OME-TIFF: pages of one or more samples a pixel, chunky or planar,
+/// 8 to 64-bit integers and 16 to 64-bit floats, strips or tiles, uncompressed, PackBits, LZW, Deflate or Zstandard,
+/// predictors 1 to 3. Written: strips, uncompressed or Deflate or Zstandard with predictor.
 /// </summary>
 public sealed class TiffFormat : IStackFormat
 {
@@ -22,10 +23,6 @@ public sealed class TiffFormat : IStackFormat
 
     /// <inheritdoc/>
     public string? CannotStore(SampleType type) => null;
-
-    /// <inheritdoc/>
-    public string? CannotCompress(OutputCompression compression) =>
-        compression == OutputCompression.Zstd ? "Zstandard is not written yet" : null;
 
     /// <inheritdoc/>
     public IStackReader Open(string path, ReadOptions options) => TiffReader.Open(this, path, options);

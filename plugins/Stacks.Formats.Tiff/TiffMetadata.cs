@@ -34,16 +34,18 @@ internal sealed class TiffMetadata
     /// <summary>The XMP packet's bytes; null where there is none.</summary>
     public byte[]? Xmp => directory.Find(Tag.Xmp) is { Count: > 0 } packet && packet.ByteLength <= Array.MaxLength ? Bytes(packet) : null;
 
-    /// <summary>A page's layout with its place in the OME image.</summary>
-    public FrameLayout Layout(FrameLayout layout, int page)
+    /// <summary>The layout of a sample's plane with its place in the OME image, where samples of a pixel are channels that follow each other.</summary>
+    public FrameLayout Layout(PageLayout pageLayout, int page, int sample)
     {
+        FrameLayout layout = pageLayout.FrameOf(sample);
         if (Planes?[page] is not { } plane)
             return layout;
         OmeImage image = plane.Image;
+        int channel = plane.C + sample;
         return layout with
         {
-            Channel = plane.C,
-            ChannelName = plane.C < image.ChannelNames.Count ? image.ChannelNames[plane.C] : null,
+            Channel = channel,
+            ChannelName = channel < image.ChannelNames.Count ? image.ChannelNames[channel] : null,
             Z = plane.Z,
             Time = plane.T,
             Extension = Ome!.Images.Count > 1 ? image.Name : null,
@@ -60,6 +62,8 @@ internal sealed class TiffMetadata
         ];
         if (firstScience.Photometric == 0)
             facts.Add(new("photometric interpretation", "white is zero: larger samples are darker; samples are taken as stored, not inverted"));
+        if (firstScience.Photometric == 2)
+            facts.Add(new("photometric interpretation", "RGB colour: red, green and blue are channels 0, 1 and 2; samples are taken as stored"));
         if (!firstScience.Frame!.Lattice.IsSingle)
             facts.Add(new("colour-filter mosaic", string.Create(CultureInfo.InvariantCulture, $"repeats every {firstScience.Frame.Lattice.PeriodX} x {firstScience.Frame.Lattice.PeriodY} pixels")));
         foreach ((string label, ushort tag) in new[] { ("made by", Tag.Software), ("date", Tag.DateTime), ("camera maker", Tag.Make), ("camera", Tag.Model) })

@@ -5,11 +5,15 @@ using Stacks.Abstractions;
 
 namespace Stacks.Formats.Tiff;
 
-/// <summary>Reads a TIFF stack: every page that is not a thumbnail is a science frame, in the order of the file.</summary>
+/// <summary>
+/// Reads a TIFF stack: every sample of every page that is not a thumbnail is a science frame, in the order of the file,
+/// and on a page of several samples a pixel in the order of the samples, whose number is then the channel. A chunky page
+/// is read and decoded once for each of its samples, so that frames stay independent of each other.
+/// </summary>
 internal sealed class TiffReader : IStackReader
 {
     private readonly ConcurrentBag<SegmentTable> tables = [];
-    private readonly int[] pageOf;
+    private readonly (int Page, int Sample)[] frames;
 
     private TiffReader(TiffFormat format, TiffFile file, PageIndex index)
     {
@@ -17,8 +21,8 @@ internal sealed class TiffReader : IStackReader
         File = file;
         Index = index;
         Metadata = new TiffMetadata(file, index);
-        pageOf = [.. Enumerable.Range(0, index.Pages.Count).Where(p => index.Pages[p].Layout.Frame is not null)];
-        if (pageOf.Length == 0)
+        frames = Frames(index);
+        if (frames.Length == 0)
             throw new StackFormatException(file.Path, "the file holds thumbnails only", "name the file they were made from");
     }
 
@@ -29,7 +33,7 @@ internal sealed class TiffReader : IStackReader
     public IStackFormat Format { get; }
 
     /// <inheritdoc/>
-    public int FrameCount => pageOf.Length;
+    public int FrameCount => frames.Length;
 
     /// <inheritdoc/>
     public IReadOnlyList<StackPart> Parts => TiffParts.Of(this);
@@ -64,7 +68,7 @@ internal sealed class TiffReader : IStackReader
     }
 
     /// <inheritdoc/>
-    public FrameLayout Layout(int frame) => Metadata.Layout(PageOf(frame).Layout.Frame!, pageOf[frame]);
+    public FrameLayout Layout(int frame) => Metadata.Layout(PageOf(frame).Layout, frames[frame].Page, frames[frame].Sample);
 
     /// <inheritdoc/>
     public HeaderNoise NoiseOf(int frame) => new(null, null, null, "TIFF has no fields for gain, read noise or pedestal", null);
@@ -77,22 +81,23 @@ internal sealed class TiffReader : IStackReader
     {
         if (!tables.TryTake(out SegmentTable? table))
             table = new SegmentTable(File);
+        (int first, int segments) = SegmentsOf(frame);
         table.Load(PageOf(frame));
-        int header = 4 * table.Length;
+        int header = 4 * segments;
         long total = header;
-        for (int i = 0; i < table.Length; i++)
-            total += table[i].Count;
+        for (int i = 0; i < segments; i++)
+            total += table[first + i].Count;
         Span<byte> bytes = raw.Resize(checked((int)total));
         Span<int> counts = MemoryMarshal.Cast<byte, int>(bytes[..header]);
         Span<byte> data = bytes[header..];
-        for (int i = 0, done = 0; i < table.Length;)
+        for (int i = 0, done = 0; i < segments;)
         {
             // Segments that follow each other in the file are read at once.
-            (long start, _) = table[i];
+            (long start, _) = table[first + i];
             int length = 0;
-            for (; i < table.Length && table[i].Offset == start + length; i++)
+            for (; i < segments && table[first + i].Offset == start + length; i++)
             {
-                counts[i] = (int)table[i].Count;
+                counts[i] = (int)table[first + i].Count;
                 length += counts[i];
             }
 
@@ -107,13 +112,14 @@ internal sealed class TiffReader : IStackReader
     public void Decode(int frame, ReadOnlySpan<byte> raw, Span<byte> stored)
     {
         PageLayout layout = PageOf(frame).Layout;
-        int at = 4 * layout.Segments;
+        (int first, int segments) = SegmentsOf(frame);
+        int at = 4 * segments;
         ReadOnlySpan<int> counts = MemoryMarshal.Cast<byte, int>(raw[..at]);
         for (int i = 0; i < counts.Length; i++)
         {
-            string? problem = SegmentCodec.Decode(layout, File.BigEndian, i, raw.Slice(at, counts[i]), stored);
+            string? problem = SegmentCodec.Decode(layout, File.BigEndian, first + i, frames[frame].Sample, raw.Slice(at, counts[i]), stored);
             if (problem is not null)
-                throw new StackFormatException(WhereIs(frame, i), problem, "copy the file again from its source");
+                throw new StackFormatException(WhereIs(frame, first + i), problem, "copy the file again from its source");
             at += counts[i];
         }
     }
@@ -125,17 +131,35 @@ internal sealed class TiffReader : IStackReader
     public void Dispose() => File.Dispose();
 
     /// <summary>Number of the page a frame stands in.</summary>
-    internal int PageNumber(int frame) => pageOf[frame];
+    internal int PageNumber(int frame) => frames[frame].Page;
 
     /// <summary>True when the frame's image data are compressed.</summary>
     internal bool IsCompressed(int frame) => PageOf(frame).Layout.Compression != Compression.None;
 
-    private Page PageOf(int frame) => Index.Pages[pageOf[frame]];
+    private static (int Page, int Sample)[] Frames(PageIndex index)
+    {
+        (int Page, int Sample)[] frames = new (int, int)[index.Pages.Sum(p => p.Layout.Samples)];
+        for (int p = 0, f = 0; p < index.Pages.Count; p++)
+        {
+            for (int s = 0; s < index.Pages[p].Layout.Samples; s++)
+                frames[f++] = (p, s);
+        }
+
+        return frames;
+    }
+
+    private Page PageOf(int frame) => Index.Pages[frames[frame].Page];
+
+    private (int First, int Count) SegmentsOf(int frame)
+    {
+        SegmentGrid grid = PageOf(frame).Layout.Grid;
+        return ((int)grid.First(frames[frame].Sample), (int)grid.PlaneCount);
+    }
 
     private string WhereIs(int frame, int segment)
     {
         SegmentTable table = new(File);
         table.Load(PageOf(frame));
-        return string.Create(CultureInfo.InvariantCulture, $"{Path}, page {pageOf[frame]}, {PageOf(frame).Layout.Grid.Word} {segment}, byte {table[segment].Offset}");
+        return string.Create(CultureInfo.InvariantCulture, $"{Path}, page {frames[frame].Page}, {PageOf(frame).Layout.Grid.Word} {segment}, byte {table[segment].Offset}");
     }
 }

@@ -5,7 +5,9 @@ namespace Stacks.Formats.Tiff;
 
 /// <summary>
 /// Writes a stack as TIFF. From a TIFF source it keeps byte order, order of pages, thumbnails and every field that does
-/// not say how samples are stored.
+/// not say how samples are stored. A page of several samples a pixel stays one page, with its number of samples, their
+/// meaning (PhotometricInterpretation, ExtraSamples) and their order; its samples are stored in planes
+/// (PlanarConfiguration 2) whether they were or not, because each plane is a frame of its own.
 /// </summary>
 internal sealed class TiffWriter : IStackWriter
 {
@@ -22,6 +24,7 @@ internal sealed class TiffWriter : IStackWriter
         this.request = request;
         source = request.Source as TiffReader;
         CheckMeaning();
+        CheckSamplesOfPixels();
         FindNewOmeTypes();
         List<OutputFile> files = [new(request.Path + ".partial", request.Path)];
         if (request.Mask)
@@ -33,11 +36,16 @@ internal sealed class TiffWriter : IStackWriter
         Files = files;
         bool bigEndian = source is { File.BigEndian: true };
         IsBig = source is { File.IsBig: true } || MayPass4GiB(TypeOf);
-        stack = new PageFile(files[0].Partial, bigEndian, IsBig, request.Compression != OutputCompression.None);
+        stack = new PageFile(files[0].Partial, bigEndian, IsBig, request.Compression switch
+        {
+            OutputCompression.None => Compression.None,
+            OutputCompression.Zstd => Compression.Zstd,
+            _ => Compression.Deflate,
+        });
         try
         {
             if (request.Mask)
-                mask = new PageFile(files[1].Partial, bigEndian, MayPass4GiB(_ => SampleType.UInt8), true);
+                mask = new PageFile(files[1].Partial, bigEndian, MayPass4GiB(_ => SampleType.UInt8), Compression.Deflate);
         }
         catch
         {
@@ -154,11 +162,13 @@ internal sealed class TiffWriter : IStackWriter
             if (pages[p].Layout.Frame is { } layout)
             {
                 SampleType type = TypeOf(frame);
-                bool changed = type != layout.SampleType || !ledger[frame].SourceDigest.AsSpan().SequenceEqual(ledger[frame].ResultDigest);
-                fields = stack.ImageFields(frame, layout, type)
+                int samples = pages[p].Layout.Samples;
+                bool changed = type != layout.SampleType
+                    || ledger.Skip(frame).Take(samples).Any(row => !row.SourceDigest.AsSpan().SequenceEqual(row.ResultDigest));
+                fields = stack.ImageFields(frame, layout, type, samples)
                     .Concat(CarriedFields.OfScience(from.File, directory, type != layout.SampleType, changed))
                     .Append(stack.BlackIsZero);
-                frame++;
+                frame += samples;
             }
             else
             {
@@ -212,6 +222,19 @@ internal sealed class TiffWriter : IStackWriter
                     string.Create(CultureInfo.InvariantCulture, $"{request.Path}, frame {f}"),
                     "the source gives its samples a scale, a zero or a missing value, for which TIFF has no fields",
                     "ask for samples = \"float32\" or \"float64\" in the recipe's [output], or for format = \"same\"");
+        }
+    }
+
+    /// <summary>A TIFF reader expects one sample type for all samples of a pixel.</summary>
+    private void CheckSamplesOfPixels()
+    {
+        for (int f = 1; source is not null && f < source.FrameCount; f++)
+        {
+            if (source.PageNumber(f) == source.PageNumber(f - 1) && TypeOf(f) != TypeOf(f - 1))
+                throw new OutputException(
+                    string.Create(CultureInfo.InvariantCulture, $"{request.Path}, frame {f}"),
+                    $"its samples would be {TypeOf(f).Name()} and those of another sample of the same pixels {TypeOf(f - 1).Name()}, which few readers of TIFF understand",
+                    "ask for samples = \"same\" or \"float32\" in the recipe's [output]");
         }
     }
 

@@ -13,20 +13,27 @@ public class TiffReferenceTests
     private const string Tiffcp = "tiffcp";
     private static readonly TiffFormat Format = new();
 
-    /// <summary>Reads both files page by page; what this tifffile cannot decode goes through libtiff's tiffcp first.</summary>
+    /// <summary>
+    /// Reads both files page by page, the samples of a pixel as planes; what this tifffile cannot decode goes through libtiff's
+    /// tiffcp first.
+    /// </summary>
     private const string SamePages =
         """
         import os, subprocess, sys, tempfile, numpy as np, tifffile
 
+        def planes(page):
+            a = page.asarray()
+            return np.moveaxis(a, -1, 0) if page.samplesperpixel > 1 and page.planarconfig == 1 else a
+
         def pages(path):
             try:
                 with tifffile.TiffFile(path) as t:
-                    return [p.asarray() for p in t.pages]
+                    return [planes(p) for p in t.pages]
             except (ValueError, KeyError, TypeError):
                 plain = os.path.join(tempfile.mkdtemp(), 'plain.tif')
                 subprocess.run(['tiffcp', '-c', 'none', path, plain], check=True, capture_output=True)
                 with tifffile.TiffFile(plain) as t:
-                    return [p.asarray() for p in t.pages]
+                    return [planes(p) for p in t.pages]
 
         native = lambda a: a.astype(a.dtype.newbyteorder('='))
         paths = sys.argv[1:]
@@ -85,7 +92,6 @@ public class TiffReferenceTests
         Python(SamePages, [.. pairs]);
         Assert.Equal(
             [
-                "BigTIFF.tif", "BigTIFFLong.tif", "BigTIFFMotorola.tif", "int16_zstd.tif",
                 "seq-1c-12b-47c39b31.tiff", "seq-1c-12b-hpredict-47c39b31.tiff", "seq-1c-12b-miniswhite-47c39b31.tiff",
                 "seq-1c-24b-072a9dc9.tiff", "seq-1c-24b-hpredict-072a9dc9.tiff", "seq-1c-24b-miniswhite-072a9dc9.tiff",
             ],

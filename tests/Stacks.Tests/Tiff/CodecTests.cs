@@ -22,13 +22,13 @@ public sealed class CodecTests
             byte[] work = [.. plain];
             HorizontalPredictor.Apply(work, samples * size, size);
             Assert.Equal(differences, work);
-            HorizontalPredictor.Undo(work, samples * size, size);
+            HorizontalPredictor.Undo(work, samples * size, size, 1);
             Assert.Equal(plain, work);
 
             byte[] sorted = TinyTiff.Predicted(plain, samples, size, 3, bigEndian: false);
             FloatingPointPredictor.Apply(work, samples * size, size);
             Assert.Equal(sorted, work);
-            FloatingPointPredictor.Undo(work, samples * size, size);
+            FloatingPointPredictor.Undo(work, samples * size, size, 1);
             Assert.Equal(plain, work);
         }
     }

@@ -17,11 +17,11 @@ public sealed class ReadTests
         foreach ((SampleType type, int bits, int format) in TinyFiles.Types)
         {
             List<TinyPage> pages = [];
-            foreach (int compression in (int[])[1, 5, 8, 32946])
+            foreach (int compression in (int[])[1, 5, 8, 32773, 32946, 50000])
             {
                 foreach (int predictor in format == 3 ? (int[])[1, 2, 3] : [1, 2])
                 {
-                    if (compression == 1 && predictor != 1)
+                    if (compression is 1 or 32773 && predictor != 1)
                         continue;
                     TinyPage page = TinyFiles.Page(21, 11, bits, format, pages.Count) with { Compression = compression, Predictor = predictor };
                     pages.Add(page);
@@ -36,6 +36,44 @@ public sealed class ReadTests
             {
                 Assert.Equal((21, 11, type), (reader.Layout(f).Width, reader.Layout(f).Height, reader.Layout(f).SampleType));
                 Assert.True(pages[f].Samples.AsSpan().SequenceEqual(TiffLoop.Samples(reader, f)), $"{type}, compression {pages[f].Compression}, predictor {pages[f].Predictor}, tile {pages[f].Tile}");
+            }
+        }
+    }
+
+    /// <summary>Each sample of a pixel is a frame, whose channel is the sample's number, whether samples stand side by side or in planes.</summary>
+    [Theory]
+    [MemberData(nameof(Containers))]
+    public void Every_sample_of_a_pixel_is_a_frame(bool big, bool bigEndian)
+    {
+        using TemporaryFolder folder = new();
+        foreach ((SampleType type, int bits, int format) in TinyFiles.Types)
+        {
+            List<TinyPage> pages = [];
+            foreach (int compression in (int[])[1, 5, 8, 32773, 50000])
+            {
+                foreach (int predictor in compression is 1 or 32773 ? (int[])[1] : format == 3 ? [1, 2, 3] : [1, 2])
+                {
+                    foreach (bool planar in (bool[])[false, true])
+                    {
+                        TinyPage page = TinyFiles.Page(21, 11, bits, format, pages.Count, 2 + (pages.Count % 4)) with { Compression = compression, Predictor = predictor, Planar = planar };
+                        pages.AddRange([page, page with { Tile = (16, 16) }, page with { RowsPerStrip = 100 }]);
+                    }
+                }
+            }
+
+            using IStackReader reader = TinyFiles.Open(folder, TinyTiff.Build(big, bigEndian, [.. pages]));
+            Assert.Equal(pages.Sum(p => p.PerPixel), reader.FrameCount);
+            int frame = 0;
+            foreach (TinyPage page in pages)
+            {
+                int plane = page.Samples.Length / page.PerPixel;
+                for (int s = 0; s < page.PerPixel; s++, frame++)
+                {
+                    Assert.Equal((type, s), (reader.Layout(frame).SampleType, reader.Layout(frame).Channel));
+                    Assert.True(
+                        page.Samples.AsSpan(s * plane, plane).SequenceEqual(TiffLoop.Samples(reader, frame)),
+                        $"{type}, compression {page.Compression}, predictor {page.Predictor}, tile {page.Tile}, planar {page.Planar}, sample {s} of {page.PerPixel}");
+                }
             }
         }
     }

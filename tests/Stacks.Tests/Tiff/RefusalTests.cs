@@ -9,7 +9,7 @@ namespace Stacks.Tests.Tiff;
 public sealed class RefusalTests
 {
     [Theory]
-    [InlineData(277, 3, "3 samples per pixel")]
+    [InlineData(277, 0, "0 samples per pixel")]
     [InlineData(258, 12, "12-bit integer samples")]
     [InlineData(258, 24, "24-bit integer samples")]
     [InlineData(258, 1, "1-bit integer samples")]
@@ -17,8 +17,6 @@ public sealed class RefusalTests
     [InlineData(262, 6, "YCbCr")]
     [InlineData(259, 6, "old-style JPEG")]
     [InlineData(259, 7, "JPEG")]
-    [InlineData(259, 32773, "PackBits")]
-    [InlineData(259, 50000, "Zstandard")]
     [InlineData(259, 4, "CCITT")]
     [InlineData(259, 34712, "compression scheme 34712")]
     [InlineData(266, 2, "FillOrder 2")]
@@ -117,6 +115,7 @@ public sealed class RefusalTests
     [Theory]
     [InlineData(5)]
     [InlineData(8)]
+    [InlineData(32773)]
     public void Bombs_are_known_before_they_are_read(int compression)
     {
         // 100 bytes cannot be 64 MiB in either scheme.

@@ -14,13 +14,14 @@ internal static class TinyFiles
         (SampleType.Float16, 16, 3), (SampleType.Float32, 32, 3), (SampleType.Float64, 64, 3),
     ];
 
-    public static TinyPage Page(int width = 7, int height = 5, int bits = 16, int format = 1, int seed = 1) => new()
+    public static TinyPage Page(int width = 7, int height = 5, int bits = 16, int format = 1, int seed = 1, int perPixel = 1) => new()
     {
         Width = width,
         Height = height,
         Bits = bits,
         Format = format,
-        Samples = TinyTiff.SomeSamples(width * height, bits, format, seed),
+        PerPixel = perPixel,
+        Samples = TinyTiff.SomeSamples(width * height * perPixel, bits, format, seed),
     };
 
     public static string Write(TemporaryFolder folder, byte[] bytes, string name = "in.tif")

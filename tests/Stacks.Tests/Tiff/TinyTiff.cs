@@ -10,7 +10,7 @@ internal sealed record TinyTag(int Tag, int Type, params long[] Values)
     public static TinyTag Text(int tag, string text) => new(tag, 2, [.. Encoding.UTF8.GetBytes(text + "\0").Select(b => (long)b)]);
 }
 
-/// <summary>A page of a test file: samples little-endian, row-major.</summary>
+/// <summary>A page of a test file: samples little-endian, row-major, plane after plane where a pixel has several.</summary>
 internal sealed record TinyPage
 {
     public required int Width { get; init; }
@@ -23,6 +23,12 @@ internal sealed record TinyPage
     public int Format { get; init; } = 1;
 
     public required byte[] Samples { get; init; }
+
+    /// <summary>Samples of a pixel.</summary>
+    public int PerPixel { get; init; } = 1;
+
+    /// <summary>Planes are stored one after the other, not side by side.</summary>
+    public bool Planar { get; init; }
 
     public int RowsPerStrip { get; init; } = 3;
 
@@ -157,8 +163,41 @@ internal sealed class TinyTiff(bool big, bool bigEndian)
         return bytes;
     }
 
+    /// <summary>PackBits by TIFF 6.0, section 9: equal bytes from two on as a run, the rest as they are, 128 at most.</summary>
+    public static byte[] PackBits(byte[] data)
+    {
+        List<byte> packed = [];
+        for (int at = 0; at < data.Length;)
+        {
+            int run = 1;
+            while (run < 128 && at + run < data.Length && data[at + run] == data[at])
+                run++;
+            if (run >= 2)
+            {
+                packed.AddRange([(byte)(257 - run), data[at]]);
+                at += run;
+                continue;
+            }
+
+            int end = at + 1;
+            while (end < data.Length && end - at < 128 && !(end + 1 < data.Length && data[end] == data[end + 1]))
+                end++;
+            packed.Add((byte)(end - at - 1));
+            packed.AddRange(data[at..end]);
+            at = end;
+        }
+
+        return [.. packed];
+    }
+
     /// <summary>The bytes of a segment before compression: predictor and byte order, sample by sample.</summary>
-    public static byte[] Predicted(byte[] samples, int rowSamples, int size, int predictor, bool bigEndian)
+    /// <param name="samples">Rows.</param>
+    /// <param name="rowSamples">Samples in a row.</param>
+    /// <param name="size">Bytes of a sample.</param>
+    /// <param name="predictor">1, 2 or 3.</param>
+    /// <param name="bigEndian">Byte order.</param>
+    /// <param name="n">Samples of a pixel that stand side by side.</param>
+    public static byte[] Predicted(byte[] samples, int rowSamples, int size, int predictor, bool bigEndian, int n = 1)
     {
         List<byte> result = [];
         for (int row = 0; row < samples.Length; row += rowSamples * size)
@@ -173,8 +212,8 @@ internal sealed class TinyTiff(bool big, bool bigEndian)
                         line.Add(samples[row + (x * size) + significance]);
                 }
 
-                for (int i = line.Count - 1; i > 0; i--)
-                    line[i] = (byte)((256 + line[i] - line[i - 1]) % 256);
+                for (int i = line.Count - 1; i >= n; i--)
+                    line[i] = (byte)((256 + line[i] - line[i - n]) % 256);
             }
             else
             {
@@ -182,7 +221,7 @@ internal sealed class TinyTiff(bool big, bool bigEndian)
                 for (int x = 0; x < rowSamples; x++)
                 {
                     UInt128 now = Value(samples, row + (x * size), size);
-                    UInt128 before = predictor == 2 && x > 0 ? Value(samples, row + ((x - 1) * size), size) : 0;
+                    UInt128 before = predictor == 2 && x >= n ? Value(samples, row + ((x - n) * size), size) : 0;
                     UInt128 difference = (now + modulus - before) % modulus;
                     byte[] bytes = [.. Enumerable.Range(0, size).Select(b => (byte)(difference >> (8 * b)))];
                     line.AddRange(bigEndian ? bytes.Reverse() : bytes);
@@ -209,14 +248,15 @@ internal sealed class TinyTiff(bool big, bool bigEndian)
         bool coded = page.Compression != 1;
         List<byte[]> segments = [.. Segments(page, size).Select(s =>
         {
-            byte[] bytes = Predicted(s.Samples, s.Width, size, coded ? page.Predictor : 1, bigEndian);
-            return page.Compression switch { 5 => Lzw(bytes), 8 or 32946 => Zlib(bytes), _ => bytes };
+            int chunk = page.Planar ? 1 : page.PerPixel;
+            byte[] bytes = Predicted(s.Samples, s.Width * chunk, size, coded ? page.Predictor : 1, bigEndian, chunk);
+            return page.Compression switch { 5 => Lzw(bytes), 8 or 32946 => Zlib(bytes), 32773 => PackBits(bytes), 50000 => Zstandard(bytes), _ => bytes };
         })];
 
         List<TinyTag> tags =
         [
-            new(256, 4, page.Width), new(257, 4, page.Height), new(258, 3, page.Bits), new(259, 3, page.Compression), new(262, 3, 1),
-            new(277, 3, 1), new(339, 3, page.Format),
+            new(256, 4, page.Width), new(257, 4, page.Height), new(258, 3, [.. Enumerable.Repeat((long)page.Bits, page.PerPixel)]), new(259, 3, page.Compression), new(262, 3, 1),
+            new(277, 3, page.PerPixel), new(284, 3, page.Planar ? 2 : 1), new(339, 3, [.. Enumerable.Repeat((long)page.Format, page.PerPixel)]),
         ];
         if (coded && page.Predictor != 1)
             tags.Add(new(317, 3, page.Predictor));
@@ -276,7 +316,11 @@ internal sealed class TinyTiff(bool big, bool bigEndian)
         return end - (big ? 8 : 4);
     }
 
-    private static IEnumerable<(byte[] Samples, int Width)> Segments(TinyPage page, int size)
+    private static IEnumerable<(byte[] Samples, int Width)> Segments(TinyPage page, int size) => page.Planar
+        ? Enumerable.Range(0, page.PerPixel).SelectMany(plane => Segments(page, size, plane, 1))
+        : Segments(page, size, 0, page.PerPixel);
+
+    private static IEnumerable<(byte[] Samples, int Width)> Segments(TinyPage page, int size, int firstPlane, int planes)
     {
         (int width, int height) = page.Tile ?? (page.Width, page.RowsPerStrip);
         for (int top = 0; top < page.Height; top += height)
@@ -284,16 +328,28 @@ internal sealed class TinyTiff(bool big, bool bigEndian)
             for (int left = 0; left < page.Width; left += width)
             {
                 int rows = page.Tile is null ? Math.Min(height, page.Height - top) : height;
-                byte[] samples = new byte[rows * width * size];
+                byte[] samples = new byte[rows * width * planes * size];
                 for (int y = 0; y < rows && top + y < page.Height; y++)
                 {
                     for (int x = 0; x < width && left + x < page.Width; x++)
-                        Array.Copy(page.Samples, (((top + y) * page.Width) + left + x) * size, samples, ((y * width) + x) * size, size);
+                    {
+                        for (int p = 0; p < planes; p++)
+                        {
+                            int from = ((((firstPlane + p) * page.Height) + top + y) * page.Width) + left + x;
+                            Array.Copy(page.Samples, from * size, samples, ((((y * width) + x) * planes) + p) * size, size);
+                        }
+                    }
                 }
 
                 yield return (samples, width);
             }
         }
+    }
+
+    private static byte[] Zstandard(byte[] bytes)
+    {
+        using ZstdSharp.Compressor compressor = new();
+        return compressor.Wrap(bytes).ToArray();
     }
 
     private static byte[] Zlib(byte[] bytes)
