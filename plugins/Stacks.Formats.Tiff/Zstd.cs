@@ -13,8 +13,8 @@ namespace Stacks.Formats.Tiff;
 /// </summary>
 internal static class Zstd
 {
-    /// <summary>The fastest level that still searches for matches: on differences of noise more effort gains little.</summary>
-    private const int Level = 1;
+    /// <summary>The library's default. Measured on differences of 16-bit and float noise: levels below lose up to a tenth in size, those above gain a few hundredths.</summary>
+    private const int Level = 3;
 
     private static readonly ConcurrentBag<Decompressor> Decompressors = [];
     private static readonly ConcurrentBag<Compressor> Compressors = [];
