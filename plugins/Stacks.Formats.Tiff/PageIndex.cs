@@ -20,6 +20,7 @@ internal sealed class PageIndex
     private const int MostFrames = 1 << 23;
     private const string CopyAgain = "copy it again from its source";
     private readonly List<Page> pages = [];
+    private readonly List<string> losses = [];
     private readonly Dictionary<PageLayout, PageLayout> layouts = [];
     private readonly TiffFile file;
     private readonly FileWindow window;
@@ -38,8 +39,11 @@ internal sealed class PageIndex
     /// <summary>The pages, in the order of the chain.</summary>
     public IReadOnlyList<Page> Pages => pages;
 
-    /// <summary>What is lost of a truncated file; null when it is whole.</summary>
-    public string? Loss { get; private set; }
+    /// <summary>What is lost of a truncated file, a sentence for each run of pages; empty when it is whole.</summary>
+    public IReadOnlyList<string> Losses => losses;
+
+    /// <summary>The first page that is whole, which speaks for the file.</summary>
+    public int FirstWhole => pages.FindIndex(p => !ReferenceEquals(p.Layout, PageLayout.Lost));
 
     /// <summary>Bytes of image data of all pages.</summary>
     public long ImageBytes { get; private set; }
@@ -52,45 +56,67 @@ internal sealed class PageIndex
 
     /// <summary>Walks over the file.</summary>
     /// <param name="file">The file.</param>
-    /// <param name="allowTruncated">True to stop before the first page that is not whole, instead of failing.</param>
+    /// <param name="allowTruncated">True to pass over pages that are not whole, instead of failing.</param>
     /// <exception cref="StackFormatException">Broken, hostile, truncated, or of a kind that is refused by name.</exception>
     public static PageIndex Walk(TiffFile file, bool allowTruncated)
     {
         PageIndex index = new(file);
-        try
-        {
-            index.WalkChain();
-        }
-        catch (CutOffException cut)
-        {
-            string where = string.Create(CultureInfo.InvariantCulture, $"{file.Path}, page {index.pages.Count}, byte {cut.Offset}");
-            string what = string.Create(CultureInfo.InvariantCulture, $"{cut.Message} should be here, the file ends at byte {file.Length}");
-            if (!allowTruncated || index.pages.Count == 0)
-                throw new StackFormatException(where, what, CopyAgain, cut);
-            index.Loss = string.Create(CultureInfo.InvariantCulture, $"page {index.pages.Count} and all after it are lost: {what} (byte {cut.Offset})");
-        }
-
+        index.WalkChain(allowTruncated);
         return index;
     }
 
-    private void WalkChain()
+    private void WalkChain(bool allowTruncated)
     {
         HashSet<long> seen = [];
-        for (long offset = file.FirstDirectory; offset != 0;)
+        (int Page, string Why)? lost = null;
+        StackFormatException? firstCut = null;
+        long? offset = file.FirstDirectory;
+        while (offset is > 0)
         {
             string where = string.Create(CultureInfo.InvariantCulture, $"{file.Path}, page {pages.Count}");
-            if (!seen.Add(offset))
+            if (!seen.Add(offset.Value))
                 throw new StackFormatException($"{where}, byte {offset}", "the chain of pages leads back to a page before", "copy the file again from its source, or save it anew");
-            TiffDirectory directory = TiffDirectory.Read(file, window, offset, where);
-            Spend(directory.ByteLength, where);
-            TagsNotCarried.UnionWith(directory.Unknown);
-            TagsNotCarried.UnionWith(directory.Fields.Select(f => f.Tag).Where(CarriedFields.PointsBelow));
-            pages.Add(PageOf(directory, offset));
-            offset = directory.Next;
+            try
+            {
+                TiffDirectory directory = TiffDirectory.Read(file, window, offset.Value, where);
+                Spend(directory.ByteLength, where);
+                pages.Add(PageOf(directory, offset.Value));
+                TagsNotCarried.UnionWith(directory.Unknown);
+                TagsNotCarried.UnionWith(directory.Fields.Select(f => f.Tag).Where(CarriedFields.PointsBelow));
+                offset = directory.Next;
+                if (lost is { } before)
+                    losses.Add(Loss(before.Page, pages.Count - 2, before.Why));
+                lost = null;
+            }
+            catch (CutOffException cut)
+            {
+                string end = string.Create(CultureInfo.InvariantCulture, $"the file ends at byte {file.Length}");
+                firstCut ??= new StackFormatException(string.Create(CultureInfo.InvariantCulture, $"{where}, byte {cut.Offset}"), $"{cut.Message} should be here, {end}", CopyAgain, cut);
+                if (!allowTruncated)
+                    throw firstCut;
+                lost ??= (pages.Count, string.Create(CultureInfo.InvariantCulture, $"{cut.Message} should be at byte {cut.Offset}, {end}"));
+                pages.Add(new Page(offset.Value, PageLayout.Lost, -1, -1));
+                offset = cut.Next;
+            }
         }
 
         if (pages.Count == 0)
             throw new StackFormatException($"{file.Path}, byte 4", "the file has no pages", CopyAgain);
+        if (lost is { } last)
+            losses.Add(Loss(last.Page, offset is null ? null : pages.Count - 1, last.Why));
+        if (frames == 0 && firstCut is not null)
+            throw firstCut;
+    }
+
+    /// <param name="first">First lost page.</param>
+    /// <param name="last">Last one; null where nobody knows how many there were.</param>
+    /// <param name="why">What is cut off of the first.</param>
+    private static string Loss(int first, int? last, string why)
+    {
+        string which = last is null
+            ? $"page {first} and all after it are lost"
+            : last == first ? $"page {first} is lost" : $"pages {first} to {last} are lost";
+        return $"{which}: {why}";
     }
 
     private Page PageOf(TiffDirectory directory, long offset)
@@ -106,12 +132,12 @@ internal sealed class PageIndex
         if (frames > MostFrames)
             throw new StackFormatException(directory.Where, $"the stack has more than {MostFrames} frames", "split it");
         Spend((long)layout.Segments * (layout.OffsetType.Size() + layout.CountType.Size()), directory.Where);
-        CheckSegments(page, directory.Where);
+        CheckSegments(page, directory.Where, directory.Next);
         return page;
     }
 
     /// <summary>Every segment lies in the file and can hold what the page promises.</summary>
-    private void CheckSegments(in Page page, string where)
+    private void CheckSegments(in Page page, string where, long next)
     {
         table.Load(page);
         PageLayout layout = page.Layout;
@@ -120,7 +146,7 @@ internal sealed class PageIndex
         {
             (long offset, long count) = table[i];
             if (!file.Holds(offset, count))
-                throw new CutOffException(offset, string.Create(CultureInfo.InvariantCulture, $"its {layout.Grid.Word} {i} of {count} bytes"));
+                throw new CutOffException(offset, string.Create(CultureInfo.InvariantCulture, $"its {layout.Grid.Word} {i} of {count} bytes"), next);
             total += count;
             if (layout.Frame is not null && count < layout.Grid.BytesOf(i) / layout.LargestRatio)
                 throw new StackFormatException(

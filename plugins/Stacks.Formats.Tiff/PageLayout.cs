@@ -17,6 +17,9 @@ internal enum Compression
 /// <summary>Everything pages that are alike share; one instance for all of them.</summary>
 internal sealed record PageLayout
 {
+    /// <summary>Stands for every page of a truncated file that is not whole.</summary>
+    public static PageLayout Lost { get; } = new() { Carried = false, Segments = 0, OffsetType = default, CountType = default, Shape = "cut off by the end of the file" };
+
     /// <summary>Shape and sample type of each sample's plane; null for a thumbnail, whose bytes are carried as they stand.</summary>
     public FrameLayout? Frame { get; init; }
 

@@ -17,8 +17,12 @@ internal readonly record struct TiffField(ushort Tag, FieldType Type, long Count
 /// <summary>A part of the file that a page needs lies beyond the end of the file.</summary>
 /// <param name="offset">Where that part should be.</param>
 /// <param name="what">What it is, with its length.</param>
-internal sealed class CutOffException(long offset, string what) : Exception(what)
+/// <param name="next">Offset of the next directory, 0 after the last; null where that is cut off too.</param>
+internal sealed class CutOffException(long offset, string what, long? next) : Exception(what)
 {
+    /// <summary>Offset of the next directory, 0 after the last; null where that is cut off too.</summary>
+    public long? Next { get; } = next;
+
     /// <summary>Where the missing part should be.</summary>
     public long Offset { get; } = offset;
 }
@@ -92,22 +96,22 @@ internal sealed class TiffDirectory
         int head = file.IsBig ? 8 : 2;
         int entrySize = file.IsBig ? 20 : 12;
         if (!file.Holds(offset, head))
-            throw new CutOffException(offset, "its directory");
+            throw new CutOffException(offset, "its directory", null);
         long count = file.Number(window.At(offset, head));
         if (count > (file.Length - offset - head - file.OffsetSize) / entrySize)
-            throw new CutOffException(offset, string.Create(CultureInfo.InvariantCulture, $"its directory of {count} fields"));
+            throw new CutOffException(offset, string.Create(CultureInfo.InvariantCulture, $"its directory of {count} fields"), null);
         ByteLength = head + (count * entrySize) + file.OffsetSize;
-        if (ByteLength > Array.MaxLength)
+        if (count > ushort.MaxValue)
             throw new StackFormatException($"{Where}, byte {offset}", $"the directory has {count} fields", "copy the file again from its source");
 
         ReadOnlySpan<byte> bytes = window.At(offset, (int)ByteLength);
+        Next = file.Number(bytes[^file.OffsetSize..]);
         for (int i = 0; i < count; i++)
         {
             int at = head + (i * entrySize);
             Add(bytes.Slice(at, entrySize), offset + at);
         }
 
-        Next = file.Number(bytes[^file.OffsetSize..]);
         if (!ascending)
             fields = [.. fields.DistinctBy(f => f.Tag).OrderBy(f => f.Tag)];
     }
@@ -127,7 +131,7 @@ internal sealed class TiffDirectory
         bool isInline = count <= file.OffsetSize / type.Size();
         long valueAt = isInline ? entryAt + inlineAt : file.Number(entry[inlineAt..]);
         if (count > file.Length / type.Size() || !file.Holds(valueAt, count * type.Size()))
-            throw new CutOffException(valueAt, string.Create(CultureInfo.InvariantCulture, $"tag {tag} with {count} values"));
+            throw new CutOffException(valueAt, string.Create(CultureInfo.InvariantCulture, $"tag {tag} with {count} values"), Next);
         ascending &= fields.Count == 0 || fields[^1].Tag < tag;
         fields.Add(new TiffField(tag, type, count, valueAt));
     }

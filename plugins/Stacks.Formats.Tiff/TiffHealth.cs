@@ -12,9 +12,10 @@ internal static class TiffHealth
     public static IEnumerable<HealthFinding> Check(TiffReader reader, CancellationToken cancellation)
     {
         PageIndex index = reader.Index;
-        yield return index.Loss is { } loss
-            ? new HealthFinding(true, $"the file is truncated: {loss}")
-            : new HealthFinding(false, string.Create(CultureInfo.InvariantCulture, $"all {index.Pages.Count} pages and their image data lie inside the file"));
+        foreach (string loss in index.Losses)
+            yield return new HealthFinding(true, $"the file is truncated: {loss}");
+        if (index.Losses.Count == 0)
+            yield return new HealthFinding(false, string.Create(CultureInfo.InvariantCulture, $"all {index.Pages.Count} pages and their image data lie inside the file"));
 
         TiffMetadata metadata = reader.Metadata;
         if (metadata.OmeProblem is { } problem)

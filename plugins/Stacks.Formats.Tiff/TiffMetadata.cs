@@ -10,12 +10,12 @@ internal sealed class TiffMetadata
     private readonly TiffDirectory directory;
     private readonly FileWindow window;
 
-    /// <summary>Reads the fields of the first page.</summary>
+    /// <summary>Reads the fields of the first page that is whole.</summary>
     public TiffMetadata(TiffFile file, PageIndex index)
     {
         this.file = file;
         window = new FileWindow(file);
-        directory = TiffDirectory.Read(file, window, index.Pages[0].Directory, $"{file.Path}, page 0");
+        directory = TiffDirectory.Read(file, window, index.Pages[index.FirstWhole].Directory, string.Create(CultureInfo.InvariantCulture, $"{file.Path}, page {index.FirstWhole}"));
         Ome = OmeXml.Read(Text(Tag.ImageDescription), Path.GetFileName(file.Path), out string? problem);
         OmeProblem = problem;
         if (Ome is { MetadataFile: null })

@@ -18,7 +18,9 @@ internal static class TiffParts
                 end++;
             string name = end == first + 1 ? $"page {first}" : $"pages {first} to {end - 1}";
             parts.Add(layout.Frame is null
-                ? new StackPart(name, layout.Shape, "thumbnail", layout.Carried ? "carried" : "not carried")
+                ? ReferenceEquals(layout, PageLayout.Lost)
+                ? new StackPart(name, layout.Shape, "lost", "not carried")
+                : new StackPart(name, layout.Shape, "thumbnail", layout.Carried ? "carried" : "not carried")
                 : new StackPart(name, $"{layout.Shape}, {layout.Coding}", "science", "filtered"));
             first = end;
         }

@@ -36,6 +36,9 @@ internal sealed class TiffReader : IStackReader
     public int FrameCount => frames.Length;
 
     /// <inheritdoc/>
+    public IReadOnlyList<string> Losses => Index.Losses;
+
+    /// <inheritdoc/>
     public IReadOnlyList<StackPart> Parts => TiffParts.Of(this);
 
     /// <inheritdoc/>

@@ -145,7 +145,7 @@ public sealed class ReadTests
     {
         // Beyond 32,767 pages a short page number would overflow.
         using TemporaryFolder folder = new();
-        byte[] bytes = ManyPages(40000);
+        byte[] bytes = ManyPages.Build(40000, big: false);
         using IStackReader reader = TinyFiles.Open(folder, bytes);
         Assert.Equal(40000, reader.FrameCount);
         Assert.Same(reader.Layout(0), reader.Layout(39999));
@@ -159,31 +159,5 @@ public sealed class ReadTests
         TinyPage[] pages = [.. Enumerable.Range(0, 40).Select(i => TinyFiles.Page(33, 29, seed: i) with { Compression = i % 2 == 0 ? 8 : 5, Predictor = 2 })];
         using IStackReader reader = TinyFiles.Open(folder, TinyTiff.Build(false, true, pages));
         Parallel.For(0, 400, i => Assert.Equal(pages[i % 40].Samples, TiffLoop.Samples(reader, i % 40)));
-    }
-
-    /// <summary>Pages of 1 x 1 sample that hold their own number.</summary>
-    private static byte[] ManyPages(int count)
-    {
-        MemoryStream file = new();
-        BinaryWriter writer = new(file);
-        writer.Write("II*\0"u8);
-        writer.Write(8);
-        for (int i = 0; i < count; i++)
-        {
-            (int Tag, int Value)[] fields = [(256, 1), (257, 1), (258, 16), (262, 1), (273, (int)file.Position + 2 + (7 * 12) + 4), (278, 1), (279, 2)];
-            writer.Write((short)fields.Length);
-            foreach ((int tag, int value) in fields)
-            {
-                writer.Write((short)tag);
-                writer.Write((short)4);
-                writer.Write(1);
-                writer.Write(value);
-            }
-
-            writer.Write(i == count - 1 ? 0 : (int)file.Position + 6);
-            writer.Write((ushort)i);
-        }
-
-        return file.ToArray();
     }
 }
