@@ -6,7 +6,7 @@ namespace Stacks.Formats.Tiff;
 /// </summary>
 internal sealed class FileWindow(TiffFile file)
 {
-    private const int Ahead = 16384;
+    private const int Ahead = 4096;
     private byte[] bytes = new byte[Ahead];
     private long start;
     private int length;

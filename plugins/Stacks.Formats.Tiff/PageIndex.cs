@@ -128,11 +128,11 @@ internal sealed class PageIndex
         long offsetsAt = directory.Find(tiled ? Tag.TileOffsets : Tag.StripOffsets)?.ValueAt ?? -1;
         long countsAt = directory.Find(tiled ? Tag.TileByteCounts : Tag.StripByteCounts)?.ValueAt ?? -1;
         Page page = new(offset, layout, offsetsAt, countsAt);
+        Spend((long)layout.Segments * (layout.OffsetType.Size() + layout.CountType.Size()), directory.Where);
+        CheckSegments(page, directory.Where, directory.Next);
         frames += layout.Samples;
         if (frames > MostFrames)
             throw new StackFormatException(directory.Where, $"the stack has more than {MostFrames} frames", "split it");
-        Spend((long)layout.Segments * (layout.OffsetType.Size() + layout.CountType.Size()), directory.Where);
-        CheckSegments(page, directory.Where, directory.Next);
         return page;
     }
 

@@ -11,6 +11,7 @@ namespace Stacks.Formats.Tiff;
 /// </summary>
 internal sealed class TiffWriter : IStackWriter
 {
+    private const int Named = 20;
     private readonly WriteRequest request;
     private readonly TiffReader? source;
     private readonly Dictionary<OmeImage, SampleType> newOmeTypes = [];
@@ -89,7 +90,7 @@ internal sealed class TiffWriter : IStackWriter
         int frames = request.Source.FrameCount;
         if (stack.Frames != frames)
             throw new InvalidOperationException($"{stack.Frames} of {frames} frames were written");
-        List<OutputField> first = FirstPage(provenance, ledger);
+        List<OutputField> first = FirstPage(provenance with { Remarks = [.. provenance.Remarks, .. NotCarried()] }, ledger);
         if (source is null)
             WritePlainPages(first);
         else
@@ -131,6 +132,20 @@ internal sealed class TiffWriter : IStackWriter
         return first;
     }
 
+    /// <summary>What of the source is not in the result, a sentence each.</summary>
+    private IEnumerable<string> NotCarried()
+    {
+        List<string> parts =
+        [
+            .. request.Source.Parts
+                .Where(p => source is null ? p.Role is not ("science" or "empty") : p.Fate == "not carried" || (!request.Carry && p.Role == "thumbnail"))
+                .Select(p => $"not carried: {p.Name} of the source ({p.Role}, {p.Shape})"),
+        ];
+        return parts.Count <= Named
+            ? parts
+            : parts.Take(Named).Append(string.Create(CultureInfo.InvariantCulture, $"not carried: {parts.Count - Named} more parts of the source"));
+    }
+
     private void WritePlainPages(List<OutputField> first)
     {
         int frames = request.Source.FrameCount;
@@ -143,7 +158,7 @@ internal sealed class TiffWriter : IStackWriter
 
     private void WritePagesOfSource(TiffReader from, List<OutputField> first, IReadOnlyList<LedgerRow> ledger)
     {
-        IReadOnlyList<Page> pages = [.. from.Index.Pages.Where(p => p.Layout.Carried)];
+        IReadOnlyList<Page> pages = [.. from.Index.Pages.Where(p => p.Layout.Carried && (request.Carry || p.Layout.Frame is not null))];
         FileWindow window = new(from.File);
         SegmentTable table = new(from.File);
         Dictionary<long, IEnumerable<OutputField>> copied = [];

@@ -1,8 +1,8 @@
 using System.Diagnostics;
 using Stacks.Abstractions;
 using Stacks.Formats.Tiff;
-using Stacks.TestSupport;
 using Stacks.Tests.Engine;
+using Stacks.TestSupport;
 using Xunit;
 using Xunit.Abstractions;
 

@@ -7,26 +7,36 @@ namespace Stacks.Tests.Tiff;
 
 public sealed class RoundTripTests
 {
-    public static TheoryData<bool, bool, bool> Ways => new()
+    public static TheoryData<bool, bool, OutputCompression> Ways
     {
-        { false, false, false }, { false, false, true }, { false, true, false }, { false, true, true },
-        { true, false, false }, { true, false, true }, { true, true, false }, { true, true, true },
-    };
+        get
+        {
+            TheoryData<bool, bool, OutputCompression> ways = [];
+            foreach ((bool big, bool bigEndian) in new[] { (false, false), (false, true), (true, false), (true, true) })
+            {
+                foreach (OutputCompression compression in (OutputCompression[])[OutputCompression.None, OutputCompression.Deflate, OutputCompression.Zstd])
+                    ways.Add(big, bigEndian, compression);
+            }
+
+            return ways;
+        }
+    }
 
     [Theory]
     [MemberData(nameof(Ways))]
-    public void Every_type_comes_back_bit_for_bit_in_its_byte_order_and_container(bool big, bool bigEndian, bool compress)
+    public void Every_type_comes_back_bit_for_bit_in_its_byte_order_and_container(bool big, bool bigEndian, OutputCompression compression)
     {
         using TemporaryFolder folder = new();
         foreach ((SampleType type, int bits, int format) in TinyFiles.Types)
         {
-            // 700 rows of 1 kB and more make several strips of 256 KiB.
-            TinyPage[] pages = [TinyFiles.Page(500, 700, bits, format) with { RowsPerStrip = 700 }, TinyFiles.Page(1, 1, bits, format), TinyFiles.Page(3, 70000, bits, format) with { RowsPerStrip = 70000 }];
+            // 550 rows of 500 bytes and more make several strips of 256 KiB.
+            TinyPage[] pages = [TinyFiles.Page(500, 550, bits, format) with { RowsPerStrip = 550 }, TinyFiles.Page(1, 1, bits, format), TinyFiles.Page(3, 12000, bits, format) with { RowsPerStrip = 12000 }];
             using IStackReader reader = TinyFiles.Open(folder, TinyTiff.Build(big, bigEndian, pages));
-            string path = TiffLoop.Copy(reader, folder.File($"{type}.tif"), compress)[0];
+            string path = TiffLoop.Copy(reader, folder.File($"{type}.tif"), compression)[0];
             using TiffReader again = (TiffReader)new TiffFormat().Open(path, new ReadOptions());
             Assert.Equal((big, bigEndian), (again.File.IsBig, again.File.BigEndian));
-            Assert.Equal(compress, again.IsCompressed(0));
+            Assert.Equal(Scheme(compression), (int)again.Index.Pages[0].Layout.Compression);
+            Assert.Equal(compression == OutputCompression.None ? 1 : type.IsInteger() ? 2 : 3, again.Index.Pages[0].Layout.Predictor);
             for (int f = 0; f < pages.Length; f++)
             {
                 Assert.Equal(type, again.Layout(f).SampleType);
@@ -34,6 +44,57 @@ public sealed class RoundTripTests
                 Assert.True(again.Index.Pages[f].Layout.Grid.BytesOf(0) <= 262144);
             }
         }
+    }
+
+    /// <summary>Numbers of the Compression field: TIFF 6.0; Adobe's Photoshop TIFF technical notes for Deflate; libtiff's list for Zstandard.</summary>
+    private static int Scheme(OutputCompression compression) => compression switch
+    {
+        OutputCompression.None => 1,
+        OutputCompression.Zstd => 50000,
+        _ => 8,
+    };
+
+    [Fact]
+    public void Lossless_is_Deflate()
+    {
+        using TemporaryFolder folder = new();
+        using IStackReader reader = TinyFiles.Open(folder, TinyTiff.Build(false, false, TinyFiles.Page()));
+        using TiffReader again = (TiffReader)new TiffFormat().Open(TiffLoop.Copy(reader, folder.File("o.tif"), OutputCompression.Lossless)[0], new ReadOptions());
+        Assert.Equal(Compression.Deflate, again.Index.Pages[0].Layout.Compression);
+    }
+
+    /// <summary>Pages stay pages, samples of a pixel stay such; they are stored in planes.</summary>
+    [Theory]
+    [MemberData(nameof(Ways))]
+    public void Pages_of_several_samples_stay_pages_of_several_samples(bool big, bool bigEndian, OutputCompression compression)
+    {
+        using TemporaryFolder folder = new();
+        TinyTag[] rgb = [new(262, 3, 2)];
+        TinyTag[] rgba = [new(262, 3, 2), new(338, 3, 2)];
+        TinyPage[] pages =
+        [
+            TinyFiles.Page(31, 40, 16, 1, 1, 3) with { Extra = rgb }, TinyFiles.Page(31, 40, 8, 2, 2, 4) with { Extra = rgba, Planar = true },
+            TinyFiles.Page(31, 40, 32, 3, 3), TinyFiles.Page(31, 40, 64, 3, 4, 2) with { Compression = 8, Predictor = 3 },
+        ];
+        using IStackReader reader = TinyFiles.Open(folder, TinyTiff.Build(big, bigEndian, pages));
+        string path = TiffLoop.Copy(reader, folder.File("out.tif"), compression)[0];
+        using TiffReader again = (TiffReader)new TiffFormat().Open(path, new ReadOptions());
+        Assert.Equal(10, again.FrameCount);
+        for (int f = 0; f < 10; f++)
+            Assert.Equal(TiffLoop.Samples(reader, f), TiffLoop.Samples(again, f));
+        Assert.Equal([3, 4, 1, 2], again.Index.Pages.Select(p => p.Layout.Samples));
+        Assert.Equal([2, 2, 0, 0], again.Index.Pages.Select(p => p.Layout.Photometric == 2 ? 2 : 0));
+        Assert.Equal([null, 2, null, null], Enumerable.Range(0, 4).Select(p => Fields.Bytes(again, p, 338)?.Max()));
+        Assert.Equal([2, 2, 1, 2], Enumerable.Range(0, 4).Select(p => (int)Fields.Bytes(again, p, 284)!.Max()));
+    }
+
+    [Fact]
+    public void Samples_of_a_pixel_cannot_get_different_types()
+    {
+        using TemporaryFolder folder = new();
+        using IStackReader reader = TinyFiles.Open(folder, TinyTiff.Build(false, false, TinyFiles.Page(perPixel: 2)));
+        OutputException refusal = Assert.Throws<OutputException>(() => TiffLoop.Copy(reader, folder.File("o.tif"), typeOf: f => f == 0 ? SampleType.UInt16 : SampleType.Float32));
+        Assert.Contains("frame 1", refusal.Message, StringComparison.Ordinal);
     }
 
     [Fact]
@@ -54,8 +115,8 @@ public sealed class RoundTripTests
         using TemporaryFolder folder = new();
         using IStackReader reader = TinyFiles.Open(folder, TinyTiff.Build(false, true, TinyFiles.Page(), TinyFiles.Page()));
         Directory.CreateDirectory(folder.File("b"));
-        string a = TiffLoop.Copy(reader, folder.File("out.tif"), compress: true, mask: true)[0];
-        string b = TiffLoop.Copy(reader, Path.Combine(folder.File("b"), "out.tif"), compress: true, mask: true)[0];
+        string a = TiffLoop.Copy(reader, folder.File("out.tif"), compression: OutputCompression.Lossless, mask: true)[0];
+        string b = TiffLoop.Copy(reader, Path.Combine(folder.File("b"), "out.tif"), compression: OutputCompression.Lossless, mask: true)[0];
         Assert.Equal(File.ReadAllBytes(a), File.ReadAllBytes(b));
     }
 
@@ -116,7 +177,7 @@ public sealed class RoundTripTests
         using TiffReader reader = (TiffReader)TinyFiles.Open(folder, TinyTiff.Build(false, true, thumbnail, TinyFiles.Page(), thumbnail, TinyFiles.Page(seed: 2)));
         Assert.Equal(2, reader.FrameCount);
         Assert.Equal(["thumbnail", "science", "thumbnail", "science"], reader.Parts.Select(p => p.Role));
-        string path = TiffLoop.Copy(reader, folder.File("out.tif"), compress: true)[0];
+        string path = TiffLoop.Copy(reader, folder.File("out.tif"), compression: OutputCompression.Lossless)[0];
         using TiffReader again = (TiffReader)new TiffFormat().Open(path, new ReadOptions());
         Assert.Equal(["thumbnail", "science", "thumbnail", "science"], again.Parts.Select(p => p.Role));
         Assert.Equal(TinyFiles.Page(seed: 2).Samples, TiffLoop.Samples(again, 1));
@@ -131,6 +192,24 @@ public sealed class RoundTripTests
         }
 
         Assert.Throws<StackFormatException>(() => TinyFiles.Open(folder, TinyTiff.Build(false, false, thumbnail)));
+    }
+
+    [Fact]
+    public void Thumbnails_are_left_out_by_choice_and_named()
+    {
+        using TemporaryFolder folder = new();
+        TinyPage thumbnail = TinyFiles.Page(4, 3) with { Extra = [new(254, 4, 1)] };
+        using IStackReader reader = TinyFiles.Open(folder, TinyTiff.Build(false, true, thumbnail, TinyFiles.Page(), thumbnail, TinyFiles.Page(seed: 2)));
+        foreach (bool carry in (bool[])[true, false])
+        {
+            string path = TiffLoop.Copy(reader, folder.File($"{carry}.tif"), carry: carry)[0];
+            using TiffReader again = (TiffReader)new TiffFormat().Open(path, new ReadOptions());
+            Assert.Equal((2, carry ? 4 : 2), (again.FrameCount, again.Index.Pages.Count));
+            Assert.Equal(TinyFiles.Page(seed: 2).Samples, TiffLoop.Samples(again, 1));
+            string provenance = Fields.Text(again, 0, 700)!;
+            Assert.Equal(!carry, provenance.Contains("not carried: page 0 of the source (thumbnail, 4 x 3)", StringComparison.Ordinal));
+            Assert.Equal(!carry, provenance.Contains("not carried: page 2 of the source (thumbnail, 4 x 3)", StringComparison.Ordinal));
+        }
     }
 
     [Fact]

@@ -23,8 +23,9 @@ internal static class TiffLoop
     public static IReadOnlyList<string> Copy(
         IStackReader reader,
         string path,
-        bool compress = false,
+        OutputCompression compression = OutputCompression.None,
         bool mask = false,
+        bool carry = true,
         Func<int, SampleType>? typeOf = null,
         Func<int, byte[], byte[]>? change = null,
         Func<ProvenanceRecord, ProvenanceRecord>? provenance = null)
@@ -36,7 +37,8 @@ internal static class TiffLoop
             Path = path,
             SampleTypeOf = typeOf,
             Mask = mask,
-            Compression = compress ? OutputCompression.Lossless : OutputCompression.None,
+            Compression = compression,
+            Carry = carry,
             Created = Created,
         });
         List<LedgerRow> ledger = [];
