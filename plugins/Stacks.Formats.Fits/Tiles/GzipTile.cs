@@ -15,6 +15,8 @@ internal static class GzipTile
     /// <returns>What is wrong with the stream; null when nothing is.</returns>
     public static unsafe string? Decode(ReadOnlySpan<byte> stream, Span<byte> bytes)
     {
+        if (stream.IsEmpty)
+            return "it is empty";
         fixed (byte* start = stream)
         {
             using UnmanagedMemoryStream memory = new(start, stream.Length);
