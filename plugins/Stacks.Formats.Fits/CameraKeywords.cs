@@ -125,12 +125,20 @@ internal static class CameraKeywords
         int size = layout.SampleType.Size();
         byte[] data = new byte[section.Width * size];
         byte[] stored = new byte[data.Length];
+        byte[] whole = hdu.Tiles is null ? [] : new byte[layout.StoredBytes];
+        if (hdu.Tiles is not null)
+            reader.ReadStored(hdu, frame - hdu.FirstFrame, whole);
         List<double> values = [];
         for (long y = section.Top; y < section.Top + section.Height; y++)
         {
-            reader.File.Read(data, FitsReader.OffsetOf(hdu, frame - hdu.FirstFrame) + (((y * layout.Width) + section.Left) * size));
-            SampleEncoding.Decode(layout.SampleType, data, stored);
-            StoredValues.AddValid(layout, stored, values);
+            long at = ((y * layout.Width) + section.Left) * size;
+            if (hdu.Tiles is null)
+            {
+                reader.File.Read(data, FitsReader.OffsetOf(hdu, frame - hdu.FirstFrame) + at);
+                SampleEncoding.Decode(layout.SampleType, data, stored);
+            }
+
+            StoredValues.AddValid(layout, hdu.Tiles is null ? stored : whole.AsSpan((int)at, stored.Length), values);
         }
 
         if (values.Count == 0)

@@ -28,6 +28,13 @@ public sealed class FitsFormat : IStackFormat
         type == SampleType.Float16 ? "FITS has no 16-bit floating-point numbers (BITPIX is 8, 16, 32, 64, -32 or -64)" : null;
 
     /// <inheritdoc/>
+    public string? CannotCompress(OutputCompression compression) => compression switch
+    {
+        OutputCompression.None or OutputCompression.Lossless => null,
+        _ => $"FITS images are not compressed with {compression} alone; 'lossless' compresses them, by RICE_1 to integers of 32 bits and by GZIP_2 beyond",
+    };
+
+    /// <inheritdoc/>
     public IStackReader Open(string path, ReadOptions options) => new FitsReader(this, path, options);
 
     /// <inheritdoc/>

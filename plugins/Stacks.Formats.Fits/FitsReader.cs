@@ -1,5 +1,7 @@
+using System.Collections.Concurrent;
 using System.Globalization;
 using Stacks.Abstractions;
+using Stacks.Formats.Fits.Tiles;
 
 namespace Stacks.Formats.Fits;
 
@@ -7,6 +9,7 @@ namespace Stacks.Formats.Fits;
 internal sealed class FitsReader : IStackReader
 {
     private readonly Hdu[] science;
+    private readonly ConcurrentBag<ByteBuffer> buffers = [];
 
     /// <summary>Opens a file and reads its headers.</summary>
     public FitsReader(IStackFormat format, string path, ReadOptions options)
@@ -54,7 +57,7 @@ internal sealed class FitsReader : IStackReader
     /// <summary>The HDUs, in order.</summary>
     public IReadOnlyList<Hdu> Hdus { get; }
 
-    /// <summary>The header of the primary HDU.</summary>
+    /// <summary>The header of the primary HDU; that of the image where it is compressed.</summary>
     public FitsHeader Primary { get; }
 
     /// <summary>Offset behind the last HDU; other bytes may follow.</summary>
@@ -63,17 +66,25 @@ internal sealed class FitsReader : IStackReader
     /// <summary>True when the file ends inside a header.</summary>
     public bool HeaderIsTruncated { get; }
 
-    /// <summary>The header of an HDU, read anew, with the primary's keywords behind it where it says INHERIT = T.</summary>
+    /// <summary>
+    /// The header of an HDU, read anew, with the primary's keywords behind it where it says INHERIT = T; the header of the
+    /// image where that is compressed.
+    /// </summary>
     public FitsHeader ReadHeader(Hdu hdu)
     {
         if (hdu.Index == 0)
             return Primary;
-        FitsHeader header = FitsHeader.Read(File, hdu.HeaderOffset, hdu.Where)
-            ?? throw new StackFormatException(hdu.Where, "the header has gone", "check what else writes to the file and run again");
+        FitsHeader header = ReadStoredHeader(hdu);
+        if (hdu.Kind == HduKind.CompressedImage)
+            header = RestoredHeader.Of(header, asPrimary: false);
         if (header.OwnTrue("INHERIT") && PrimaryIsEmpty)
             header.Inherited = Primary;
         return header;
     }
+
+    /// <summary>The header of an HDU as it stands in the file; that of the table where an image is compressed.</summary>
+    public FitsHeader ReadStoredHeader(Hdu hdu) => FitsHeader.Read(File, hdu.HeaderOffset, hdu.Where)
+        ?? throw new StackFormatException(hdu.Where, "the header has gone", "check what else writes to the file and run again");
 
     /// <summary>The science HDU of a frame.</summary>
     public Hdu HduOf(int frame)
@@ -106,15 +117,46 @@ internal sealed class FitsReader : IStackReader
     public void Read(int frame, ByteBuffer raw)
     {
         Hdu hdu = HduOf(frame);
-        File.Read(raw.Resize((int)hdu.PlaneBytes), OffsetOf(hdu, frame - hdu.FirstFrame));
+        ReadPlane(hdu, frame - hdu.FirstFrame, raw);
     }
 
     /// <inheritdoc/>
     public void Decode(int frame, ReadOnlySpan<byte> raw, Span<byte> stored)
     {
         Hdu hdu = HduOf(frame);
+        DecodePlane(hdu, frame - hdu.FirstFrame, raw, stored);
+    }
+
+    /// <summary>Reads and decodes a plane of a science HDU or of a quality mask.</summary>
+    /// <param name="hdu">The HDU.</param>
+    /// <param name="plane">The plane, from 0.</param>
+    /// <param name="stored">Receives the plane's stored samples.</param>
+    public void ReadStored(Hdu hdu, long plane, Span<byte> stored)
+    {
+        ByteBuffer raw = buffers.TryTake(out ByteBuffer? used) ? used : new ByteBuffer();
+        ReadPlane(hdu, plane, raw);
+        DecodePlane(hdu, plane, raw.Written, stored);
+        buffers.Add(raw);
+    }
+
+    private void ReadPlane(Hdu hdu, long plane, ByteBuffer raw)
+    {
+        if (hdu.Tiles is not null)
+            TileRows.Read(File, hdu, plane, raw);
+        else
+            File.Read(raw.Resize((int)hdu.PlaneBytes), OffsetOf(hdu, plane));
+    }
+
+    private static void DecodePlane(Hdu hdu, long plane, ReadOnlySpan<byte> raw, Span<byte> stored)
+    {
+        if (hdu.Tiles is not null)
+        {
+            TileDecoder.Decode(hdu, plane, raw, stored);
+            return;
+        }
+
         if (raw.Length != hdu.PlaneBytes)
-            throw new StackFormatException(string.Create(CultureInfo.InvariantCulture, $"{hdu.Where}, frame {frame}"), $"{raw.Length} bytes where the header promises {hdu.PlaneBytes}", "get the file again");
+            throw new StackFormatException(string.Create(CultureInfo.InvariantCulture, $"{hdu.Where}, plane {plane}"), $"{raw.Length} bytes where the header promises {hdu.PlaneBytes}", "get the file again");
         SampleEncoding.Decode(hdu.Layout!.SampleType, raw, stored);
     }
 
@@ -123,7 +165,7 @@ internal sealed class FitsReader : IStackReader
     {
         Hdu hdu = HduOf(frame);
         foreach (Hdu mask in hdu.Masks)
-            QualityMask.Mark(File, mask, mask.Planes == 1 ? 0 : frame - hdu.FirstFrame, flags.Samples);
+            QualityMask.Mark(this, mask, mask.Planes == 1 ? 0 : frame - hdu.FirstFrame, flags.Samples);
         return hdu.Masks.Count > 0;
     }
 

@@ -1,10 +1,11 @@
 using Stacks.Abstractions;
+using Stacks.Formats.Fits.Tiles;
 
 namespace Stacks.Formats.Fits;
 
 /// <summary>
-/// Writes a FITS file: each frame at its place as it comes; carried parts, headers, change masks and ledger at the end,
-/// when checksums and provenance are known.
+/// Writes a FITS file: each frame behind the last one as it comes; carried parts, headers, change masks and ledger at the
+/// end, when checksums and provenance are known. An HDU's place is known when the frames before it are written.
 /// </summary>
 internal sealed class FitsWriter : IStackWriter
 {
@@ -12,6 +13,9 @@ internal sealed class FitsWriter : IStackWriter
     private readonly WriteRequest request;
     private readonly IReadOnlyList<OutputHdu> hdus;
     private readonly uint[] dataSums;
+    private readonly long[] offsets;
+    private readonly int[] framesAt;
+    private readonly TileTable?[] tables;
     private readonly PartialFile output;
     private readonly ChangeMask? mask;
     private int current;
@@ -20,11 +24,14 @@ internal sealed class FitsWriter : IStackWriter
     /// <summary>Creates the file under its partial name.</summary>
     public FitsWriter(WriteRequest request)
     {
-        if (request.Compression != OutputCompression.None)
-            throw new OutputException(request.Path, "compressed FITS is not written yet", "set [output] compression = \"none\" in the recipe");
+        if (new FitsFormat().CannotCompress(request.Compression) is { } fault)
+            throw new OutputException(request.Path, $"cannot be compressed so: {fault}", "change [output] compression in the recipe");
         this.request = request;
         hdus = OutputPlan.Of(request);
         dataSums = new uint[hdus.Count];
+        offsets = new long[hdus.Count];
+        framesAt = [.. hdus.Index().Where(hdu => hdu.Item.Frames > 0).Select(hdu => hdu.Index)];
+        tables = new TileTable?[hdus.Count];
         string partial = request.Path + ".partial";
         Files = [new OutputFile(partial, request.Path)];
         output = new PartialFile(partial);
@@ -37,7 +44,10 @@ internal sealed class FitsWriter : IStackWriter
     /// <inheritdoc/>
     public void Encode(int frame, Span<byte> stored, ReadOnlySpan<byte> flags, EncodedFrame encoded)
     {
-        SampleEncoding.Encode(request.SampleTypeOf(frame), stored, encoded.Data.Resize(stored.Length));
+        if (HduOf(frame).Tiles is { } tiles)
+            TileEncoder.Encode(tiles, stored, encoded.Data);
+        else
+            SampleEncoding.Encode(request.SampleTypeOf(frame), stored, encoded.Data.Resize(stored.Length));
         if (mask is not null)
             ChangeMask.Compress(flags, encoded.Mask);
         else
@@ -48,15 +58,25 @@ internal sealed class FitsWriter : IStackWriter
     public void Write(int frame, EncodedFrame encoded)
     {
         while (frame >= hdus[current].FirstFrame + hdus[current].Frames)
-            current++;
+            GoOn();
         OutputHdu hdu = hdus[current];
-        if (frame == hdu.FirstFrame)
-            frames = new DataUnit(output, hdu.DataOffset);
-        frames!.Append(encoded.Data.Written);
-        if (frame == hdu.FirstFrame + hdu.Frames - 1)
+        if (hdu.Tiles is not null)
         {
-            frames.Pad();
-            dataSums[current] = frames.Sum;
+            TileTable table = tables[current] ??= new TileTable(output, DataOffset(current), hdu.Tiles);
+            table.Append(encoded.Data.Written);
+            if (frame == hdu.FirstFrame + hdu.Frames - 1)
+                dataSums[current] = table.Finish();
+        }
+        else
+        {
+            if (frame == hdu.FirstFrame)
+                frames = new DataUnit(output, DataOffset(current));
+            frames!.Append(encoded.Data.Written);
+            if (frame == hdu.FirstFrame + hdu.Frames - 1)
+            {
+                frames.Pad();
+                dataSums[current] = frames.Sum;
+            }
         }
 
         mask?.Append(encoded.Mask.Written);
@@ -65,24 +85,28 @@ internal sealed class FitsWriter : IStackWriter
     /// <inheritdoc/>
     public void Complete(ProvenanceRecord provenance, IReadOnlyList<LedgerRow> ledger)
     {
+        while (current < hdus.Count - 1)
+            GoOn();
         for (int i = 0; i < hdus.Count; i++)
         {
             OutputHdu hdu = hdus[i];
             if (hdu.Carried is { } carried)
-                dataSums[i] = hdu.MakeCards is null ? CopyWhole(carried, hdu) : Copy(carried.DataOffset, carried.PresentBytes, hdu.DataOffset);
+                dataSums[i] = hdu.MakeCards is null ? CopyWhole(carried, offsets[i]) : Copy(carried.DataOffset, carried.PresentBytes, DataOffset(i));
             if (hdu.MakeCards is not { } makeCards)
                 continue;
             List<FitsCard> cards = makeCards();
-            if (i == 0)
+            if (tables[i] is { } table)
+                cards = TileHeader.Of(cards, hdu.Tiles!, table.HeapBytes, table.Longest);
+            if (hdu.HoldsProvenance)
             {
                 bool longStrings = cards.Any(card => card.Is("LONGSTRN"));
                 cards.AddRange(ProvenanceCards.Of(provenance, Losses(), longStrings, HeaderImage.RoomFor(hdu.HeaderBytes) - cards.Count));
             }
 
-            output.Write(HeaderImage.Build(cards, hdu.HeaderBytes, dataSums[i]), hdu.Offset);
+            output.Write(HeaderImage.Build(cards, hdu.HeaderBytes, dataSums[i]), offsets[i]);
         }
 
-        long end = hdus[^1].End;
+        long end = EndOf(hdus.Count - 1);
         if (mask is not null)
         {
             long version = NextVersion(ChangeMask.ExtensionName);
@@ -100,7 +124,34 @@ internal sealed class FitsWriter : IStackWriter
         mask?.Dispose();
     }
 
-    private uint CopyWhole(Hdu carried, OutputHdu hdu) => Copy(carried.HeaderOffset, carried.DataOffset - carried.HeaderOffset + carried.PresentBytes, hdu.Offset);
+    /// <summary>Goes on to the next HDU, which starts behind this one.</summary>
+    private void GoOn()
+    {
+        offsets[current + 1] = EndOf(current);
+        current++;
+    }
+
+    private long DataOffset(int hdu) => offsets[hdu] + hdus[hdu].HeaderBytes;
+
+    private long EndOf(int hdu) => DataOffset(hdu) + FitsBlock.Padded(tables[hdu]?.Bytes ?? hdus[hdu].DataBytes);
+
+    /// <summary>The HDU of a frame, by bisection: workers ask in any order.</summary>
+    private OutputHdu HduOf(int frame)
+    {
+        int low = 0, high = framesAt.Length - 1;
+        while (low < high)
+        {
+            int middle = (low + high + 1) / 2;
+            if (hdus[framesAt[middle]].FirstFrame <= frame)
+                low = middle;
+            else
+                high = middle - 1;
+        }
+
+        return hdus[framesAt[low]];
+    }
+
+    private uint CopyWhole(Hdu carried, long to) => Copy(carried.HeaderOffset, carried.DataOffset - carried.HeaderOffset + carried.PresentBytes, to);
 
     /// <summary>Copies bytes of the source, fills their last block, and returns their sum.</summary>
     private uint Copy(long from, long bytes, long to)

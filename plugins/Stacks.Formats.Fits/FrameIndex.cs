@@ -1,5 +1,6 @@
 using System.Globalization;
 using Stacks.Abstractions;
+using Stacks.Formats.Fits.Tiles;
 
 namespace Stacks.Formats.Fits;
 
@@ -12,7 +13,6 @@ internal static class FrameIndex
     /// <exception cref="StackFormatException">No science frame, truncated, or of a kind that is refused.</exception>
     public static IReadOnlyList<Hdu> Build(FitsReader reader, List<Hdu> hdus, ReadOptions options)
     {
-        RefuseCompressed(reader.Path, hdus, options);
         long frames = 0;
         for (int i = 0; i < hdus.Count; i++)
         {
@@ -21,6 +21,10 @@ internal static class FrameIndex
                 throw new StackFormatException($"{hdu.Where}, keyword NAXIS", $"an image of {hdu.Axes.Count} axes; stacks have 2, 3 or 4", "cut the array into cubes");
             if (hdu.Role is HduRole.Science or HduRole.QualityMask)
                 hdus[i] = hdu = hdu with { Layout = ImageLayout.Read(hdu, reader.ReadHeader(hdu)) };
+            if (hdu.Layout is not null && hdu.Kind == HduKind.CompressedImage)
+                hdus[i] = hdu = hdu with { Tiles = TiledImage.Read(hdu, reader.ReadStoredHeader(hdu)) };
+            if (hdu.Tiles is not null && hdu.IsTruncated)
+                hdus[i] = hdu = hdu with { WholePlanes = TileRows.WholePlanes(reader.File, hdu) };
             if (hdu.Role == HduRole.Science)
             {
                 hdus[i] = hdu = hdu with { FirstFrame = (int)frames };
@@ -47,18 +51,10 @@ internal static class FrameIndex
         return hdus;
     }
 
-    private static void RefuseCompressed(string path, List<Hdu> hdus, ReadOptions options)
-    {
-        Hdu? compressed = hdus.FirstOrDefault(h => h.Kind == HduKind.CompressedImage
-            && (options.Extensions is { } asked ? asked.Any(name => HduRoles.Matches(h, name)) : !ChangeMask.IsOurs(h)));
-        if (compressed is not null)
-            throw new StackFormatException(compressed.Where, $"the image '{compressed.Label}' is stored in compressed tiles, which are not read yet", $"unpack it first: funpack {System.IO.Path.GetFileName(path)}");
-    }
-
     private static StackFormatException Truncated(Hdu hdu, long frames)
     {
         long end = hdu.DataOffset + hdu.PresentBytes;
-        string where = hdu.Role == HduRole.Science
+        string where = hdu.Role == HduRole.Science && hdu.Tiles is null
             ? string.Create(CultureInfo.InvariantCulture, $"{hdu.Where}, frame {frames} at byte {FitsReader.OffsetOf(hdu, hdu.Planes)}")
             : string.Create(CultureInfo.InvariantCulture, $"{hdu.Where}, data at byte {hdu.DataOffset}");
         return new StackFormatException(where, string.Create(CultureInfo.InvariantCulture, $"truncated: the file ends at byte {end}, the header promises data to byte {(Int128)hdu.DataOffset + hdu.DataBytes}"), "copy the file again from where it was made");
@@ -68,7 +64,7 @@ internal static class FrameIndex
     {
         const string remedy = "name a file, or extensions, with an image of two or more axes";
         Hdu? groups = hdus.FirstOrDefault(h => h.Kind == HduKind.RandomGroups);
-        Hdu? line = hdus.FirstOrDefault(h => h.Kind == HduKind.Image && h.Axes.Count == 1);
+        Hdu? line = hdus.FirstOrDefault(h => h.IsImage && h.Axes.Count == 1);
         Hdu? cut = hdus.FirstOrDefault(h => h.Role == HduRole.Science);
         if (groups is not null)
             return new StackFormatException(groups.Where, "random groups (GROUPS = T) are visibilities, not frames, and no image follows", remedy);

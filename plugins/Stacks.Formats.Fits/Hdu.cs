@@ -1,5 +1,6 @@
 using System.Globalization;
 using Stacks.Abstractions;
+using Stacks.Formats.Fits.Tiles;
 
 namespace Stacks.Formats.Fits;
 
@@ -56,10 +57,10 @@ internal sealed record Hdu
     /// <summary>Kind.</summary>
     public required HduKind Kind { get; init; }
 
-    /// <summary>BITPIX.</summary>
+    /// <summary>BITPIX; that of the image where it is compressed.</summary>
     public required int BitPix { get; init; }
 
-    /// <summary>NAXIS1, NAXIS2, ...</summary>
+    /// <summary>NAXIS1, NAXIS2, ...; those of the image where it is compressed.</summary>
     public required IReadOnlyList<long> Axes { get; init; }
 
     /// <summary>EXTNAME; null when there is none.</summary>
@@ -80,17 +81,29 @@ internal sealed record Hdu
     /// <summary>Bytes of the data unit that are in the file: fewer than <see cref="DataBytes"/> when it is truncated.</summary>
     public required long PresentBytes { get; init; }
 
+    /// <summary>ZCMPTYPE; compressed images only.</summary>
+    public string? Compression { get; init; }
+
     /// <summary>Role.</summary>
     public HduRole Role { get; init; } = HduRole.None;
 
     /// <summary>Layout of its planes; science images and quality masks only.</summary>
     public FrameLayout? Layout { get; init; }
 
+    /// <summary>Where its tiles are and how they are compressed; compressed science images and quality masks only.</summary>
+    public TiledImage? Tiles { get; init; }
+
+    /// <summary>Planes whose tiles are all in a truncated file; compressed science images only.</summary>
+    public long WholePlanes { get; init; }
+
     /// <summary>Index in the stack of its first plane; science only.</summary>
     public int FirstFrame { get; init; }
 
     /// <summary>The quality masks that flag its planes; science only.</summary>
     public IReadOnlyList<Hdu> Masks { get; init; } = [];
+
+    /// <summary>True for an image, compressed or not.</summary>
+    public bool IsImage => Kind is HduKind.Image or HduKind.CompressedImage;
 
     /// <summary>True when the file ends inside the data unit.</summary>
     public bool IsTruncated => PresentBytes < DataBytes;
@@ -111,10 +124,10 @@ internal sealed record Hdu
     public long PlaneBytes => Axes[0] * Axes[1] * (Math.Abs(BitPix) / 8);
 
     /// <summary>Planes that the header promises; images of two and more axes only.</summary>
-    public long PromisedPlanes => DataBytes / PlaneBytes;
+    public long PromisedPlanes => Axes.Skip(2).Aggregate(1L, (product, axis) => product * axis);
 
     /// <summary>Whole planes in the file; images of two and more axes only.</summary>
-    public long Planes => PresentBytes / PlaneBytes;
+    public long Planes => !IsTruncated ? PromisedPlanes : Tiles is null ? PresentBytes / PlaneBytes : WholePlanes;
 
     /// <summary><c>300 x 200 x 5</c>.</summary>
     public string Shape => string.Join(" x ", Axes.Select(a => a.ToString(CultureInfo.InvariantCulture)));

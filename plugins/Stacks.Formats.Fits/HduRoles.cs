@@ -20,7 +20,7 @@ internal static class HduRoles
     /// <summary>What an image's name says it is. A mask holds integers.</summary>
     private static HduRole ByName(Hdu hdu)
     {
-        if (hdu.Kind != HduKind.Image)
+        if (!hdu.IsImage || ChangeMask.IsOurs(hdu))
             return HduRole.None;
         if (hdu.Axes.Count < 2)
             return HduRole.OtherImage;
@@ -55,7 +55,7 @@ internal static class HduRoles
         {
             if (!hdus.Any(h => Matches(h, name)))
                 throw new StackFormatException(path, $"no extension '{name}'", $"there are: {string.Join("; ", hdus.Select(h => h.Label))}");
-            if (!hdus.Any(h => Matches(h, name) && h.Kind is HduKind.Image or HduKind.CompressedImage && h.Axes.Count >= 2))
+            if (!hdus.Any(h => Matches(h, name) && h.IsImage && h.Axes.Count >= 2))
                 throw new StackFormatException(path, $"extension '{name}' holds no image", "name an image extension");
         }
 
@@ -65,7 +65,7 @@ internal static class HduRoles
         for (int i = 0; i < hdus.Count; i++)
         {
             Hdu hdu = hdus[i];
-            if (hdu.Role == HduRole.None || hdu.Axes.Count < 2)
+            if (!hdu.IsImage || hdu.Axes.Count < 2)
                 continue;
             bool isScience = asked is not null
                 ? asked.Any(name => Matches(hdu, name))

@@ -1,9 +1,14 @@
 using System.Globalization;
 using Stacks.Abstractions;
+using Stacks.Formats.Fits.Tiles;
 
 namespace Stacks.Formats.Fits;
 
-/// <summary>Walks a file from HDU to HDU, checks every size against the file's length, and reads no samples.</summary>
+/// <summary>
+/// Walks a file from HDU to HDU, checks every size against the file's length, and reads no samples. An image that was the
+/// primary array and was compressed is the primary HDU again, in the place of the one without data that compression put
+/// before it.
+/// </summary>
 internal sealed class HduScan
 {
     private const string GetAgain = "get the file again";
@@ -16,7 +21,7 @@ internal sealed class HduScan
     /// <summary>The HDUs in order. The last one may be truncated; a file is refused for that elsewhere.</summary>
     public List<Hdu> Hdus { get; } = [];
 
-    /// <summary>The header of the primary HDU.</summary>
+    /// <summary>The header of the primary HDU: that of the image where it is compressed.</summary>
     public FitsHeader Primary { get; private set; } = null!;
 
     /// <summary>Offset behind the last HDU that is there; more bytes may follow.</summary>
@@ -31,13 +36,13 @@ internal sealed class HduScan
     {
         HduScan scan = new();
         Span<byte> start = stackalloc byte[9];
-        while (file.Length - scan.End >= start.Length)
+        for (int number = 0; file.Length - scan.End >= start.Length; number++)
         {
             int index = scan.Hdus.Count;
             file.Read(start, scan.End);
             if (!start.SequenceEqual(index == 0 ? "SIMPLE  ="u8 : "XTENSION="u8))
                 break;
-            string where = string.Create(CultureInfo.InvariantCulture, $"{file.Path}, HDU {index} at byte {scan.End}");
+            string where = string.Create(CultureInfo.InvariantCulture, $"{file.Path}, HDU {number} at byte {scan.End}");
             if (FitsHeader.Read(file, scan.End, where) is not { } header)
             {
                 scan.HeaderIsTruncated = true;
@@ -47,6 +52,13 @@ internal sealed class HduScan
             if (index == 0)
                 scan.Primary = header;
             Hdu hdu = Describe(file, header, index, scan.End);
+            if (number == 1 && hdu.Kind == HduKind.CompressedImage && header.OwnTrue("ZSIMPLE") && RestoredHeader.IsBare(scan.Primary, header))
+            {
+                scan.Primary = RestoredHeader.Of(header, asPrimary: true);
+                scan.Hdus.Clear();
+                hdu = hdu with { Index = 0 };
+            }
+
             scan.Hdus.Add(hdu);
             scan.End = hdu.IsTruncated ? file.Length : Math.Min(hdu.EndOffset, file.Length);
         }
@@ -70,31 +82,45 @@ internal sealed class HduScan
         if (index == 0 && !header.OwnTrue("SIMPLE"))
             throw new StackFormatException($"{header.Where}, keyword SIMPLE", "the file says itself that it is not standard FITS (SIMPLE is not T)", "convert it to standard FITS");
 
-        int bitPix = (int)header.RequiredInteger("BITPIX", -64, 64);
-        if (bitPix is not (8 or 16 or 32 or 64 or -32 or -64))
-            throw new StackFormatException($"{header.Where}, keyword BITPIX", $"{bitPix} is none of 8, 16, 32, 64, -32, -64", GetAgain);
-        int axisCount = (int)header.RequiredInteger("NAXIS", 0, MostAxes);
-        long[] axes = new long[axisCount];
-        for (int i = 0; i < axisCount; i++)
-            axes[i] = header.RequiredInteger(string.Create(CultureInfo.InvariantCulture, $"NAXIS{i + 1}"), 0, long.MaxValue);
-
+        (int bitPix, long[] axes) = Array(header, "");
         HduKind kind = KindOf(header, index, axes);
         long dataBytes = DataBytes(header, kind, bitPix, axes, index);
         long dataOffset = offset + header.Bytes;
+        bool isCompressed = kind == HduKind.CompressedImage;
+        bool isEmpty = kind == HduKind.Image && dataBytes == 0;
+        if (isCompressed)
+        {
+            (bitPix, axes) = Array(header, "Z");
+            isEmpty = DataBytes(header, HduKind.Image, bitPix, axes, 0) == 0;
+        }
+
         return new Hdu
         {
             Index = index,
             Where = header.Where,
-            Kind = kind == HduKind.Image && dataBytes == 0 ? HduKind.Empty : kind,
+            Kind = isEmpty ? HduKind.Empty : kind,
             BitPix = bitPix,
             Axes = axes,
-            Name = header.OwnText("EXTNAME")?.Trim(),
+            Compression = isCompressed ? header.OwnText("ZCMPTYPE")?.Trim() ?? "" : null,
+            Name = (isCompressed ? RestoredHeader.Of(header, asPrimary: false) : header).OwnText("EXTNAME")?.Trim(),
             Version = header.FindNumber("EXTVER") is { } version && Math.Abs(version) < int.MaxValue ? (long)version : null,
             HeaderOffset = offset,
             DataOffset = dataOffset,
             DataBytes = dataBytes,
             PresentBytes = Math.Min(dataBytes, file.Length - dataOffset),
         };
+    }
+
+    /// <summary>BITPIX, NAXIS and NAXISn; with a Z before them those of a compressed image.</summary>
+    private static (int BitPix, long[] Axes) Array(FitsHeader header, string before)
+    {
+        int bitPix = (int)header.RequiredInteger(before + "BITPIX", -64, 64);
+        if (bitPix is not (8 or 16 or 32 or 64 or -32 or -64))
+            throw new StackFormatException($"{header.Where}, keyword {before}BITPIX", $"{bitPix} is none of 8, 16, 32, 64, -32, -64", GetAgain);
+        long[] axes = new long[header.RequiredInteger(before + "NAXIS", 0, MostAxes)];
+        for (int i = 0; i < axes.Length; i++)
+            axes[i] = header.RequiredInteger(string.Create(CultureInfo.InvariantCulture, $"{before}NAXIS{i + 1}"), 0, long.MaxValue);
+        return (bitPix, axes);
     }
 
     private static HduKind KindOf(FitsHeader header, int index, long[] axes)

@@ -24,7 +24,7 @@ internal static class HealthCheck
 
             if (hdu.EndOffset > reader.File.Length)
                 yield return new HealthFinding(true, string.Create(CultureInfo.InvariantCulture, $"{name}: the last block is not filled up: the file ends at byte {reader.File.Length}, not {hdu.EndOffset}; no sample is lost"));
-            FitsHeader header = reader.ReadHeader(hdu);
+            FitsHeader header = reader.ReadStoredHeader(hdu);
             string? dataSum = header.OwnText("DATASUM")?.Trim();
             string? checksum = header.OwnText("CHECKSUM")?.Trim();
             if (dataSum is null && checksum is null)

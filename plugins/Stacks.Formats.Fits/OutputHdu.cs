@@ -1,4 +1,5 @@
 using Stacks.Abstractions;
+using Stacks.Formats.Fits.Tiles;
 
 namespace Stacks.Formats.Fits;
 
@@ -32,18 +33,15 @@ internal sealed record OutputHdu
     /// <summary>Type of the samples; frames only.</summary>
     public SampleType SampleType { get; init; }
 
-    /// <summary>Where its header starts.</summary>
-    public long Offset { get; init; }
+    /// <summary>How its frames are cut and compressed; null when they are not. The header is then turned into that of a table.</summary>
+    public TilePlan? Tiles { get; init; }
+
+    /// <summary>True for the HDU whose header gets the provenance of the run.</summary>
+    public bool HoldsProvenance { get; init; }
 
     /// <summary>Bytes of its header.</summary>
     public long HeaderBytes { get; init; }
 
-    /// <summary>Bytes of its data unit, without padding.</summary>
+    /// <summary>Bytes of its data unit, without padding; 0 for compressed frames, whose size is known when they are written.</summary>
     public long DataBytes { get; init; }
-
-    /// <summary>Where its data unit starts.</summary>
-    public long DataOffset => Offset + HeaderBytes;
-
-    /// <summary>Where the next HDU starts.</summary>
-    public long End => DataOffset + FitsBlock.Padded(DataBytes);
 }

@@ -1,9 +1,10 @@
 using System.Globalization;
 using Stacks.Abstractions;
+using Stacks.Formats.Fits.Tiles;
 
 namespace Stacks.Formats.Fits;
 
-/// <summary>Which HDUs the output has and where they stand: all of it is known before the first frame.</summary>
+/// <summary>Which HDUs the output has and how long their headers are: all of it is known before the first frame.</summary>
 internal static class OutputPlan
 {
     /// <summary>Cards set aside in the primary header for provenance: five blocks.</summary>
@@ -12,7 +13,7 @@ internal static class OutputPlan
     /// <summary>The HDUs that come before the change masks and the ledger.</summary>
     /// <exception cref="OutputException">Frames of one HDU would get different types.</exception>
     public static IReadOnlyList<OutputHdu> Of(WriteRequest request) =>
-        Place(request.Source is FitsReader fits ? FromFits(request, fits) : FromOther(request));
+        WithHeaderBytes(Compressed(request, WithProvenance(request.Source is FitsReader fits ? FromFits(request, fits) : FromOther(request))));
 
     /// <summary>Every HDU of a FITS source, in order, but for truncated ones that hold no whole frame.</summary>
     private static IEnumerable<OutputHdu> FromFits(WriteRequest request, FitsReader source)
@@ -34,6 +35,11 @@ internal static class OutputPlan
 
                 yield return Frames(hdu.Label, MakeCards, axes, hdu.FirstFrame, (int)hdu.Planes, type);
             }
+            else if (hdu.Index == 0 && hdu.Kind == HduKind.CompressedImage)
+            {
+                yield return new OutputHdu { Label = hdu.Label, MakeCards = () => HeaderEdit.AsPrimary(NewHeader.EmptyPrimary(), request.Created) };
+                yield return Whole(hdu);
+            }
             else if (hdu.Index == 0)
             {
                 yield return new OutputHdu
@@ -46,10 +52,13 @@ internal static class OutputPlan
             }
             else
             {
-                yield return new OutputHdu { Label = hdu.Label, Carried = hdu, HeaderBytes = hdu.DataOffset - hdu.HeaderOffset, DataBytes = hdu.DataBytes };
+                yield return Whole(hdu);
             }
         }
     }
+
+    /// <summary>An HDU of the source that is carried byte for byte.</summary>
+    private static OutputHdu Whole(Hdu hdu) => new() { Label = hdu.Label, Carried = hdu, HeaderBytes = hdu.DataOffset - hdu.HeaderOffset, DataBytes = hdu.DataBytes };
 
     /// <summary>A source of another format: one cube when all frames are alike, else an extension for each.</summary>
     private static IEnumerable<OutputHdu> FromOther(WriteRequest request)
@@ -88,20 +97,31 @@ internal static class OutputPlan
         DataBytes = axes.Aggregate(1L, (product, axis) => product * axis) * type.Size(),
     };
 
-    /// <summary>Gives each HDU its place, one behind the other.</summary>
-    private static List<OutputHdu> Place(IEnumerable<OutputHdu> hdus)
-    {
-        List<OutputHdu> placed = [];
-        long offset = 0;
-        foreach (OutputHdu hdu in hdus)
-        {
-            long header = hdu.MakeCards is { } makeCards ? HeaderImage.BytesFor(makeCards().Count + (placed.Count == 0 ? Reserve : 0)) : hdu.HeaderBytes;
-            placed.Add(hdu with { Offset = offset, HeaderBytes = header });
-            offset = placed[^1].End;
-        }
+    /// <summary>The first HDU's header holds the provenance.</summary>
+    private static IEnumerable<OutputHdu> WithProvenance(IEnumerable<OutputHdu> hdus) => hdus.Select((hdu, i) => hdu with { HoldsProvenance = i == 0 });
 
-        return placed;
+    /// <summary>
+    /// Frames in tables of tiles, where compression is asked for. No table can be the primary HDU: frames of the primary
+    /// array become extension 1, with their header and the provenance in it, so that these stand in the primary header
+    /// again when the file is unpacked.
+    /// </summary>
+    private static IEnumerable<OutputHdu> Compressed(WriteRequest request, IEnumerable<OutputHdu> hdus)
+    {
+        foreach ((int i, OutputHdu hdu) in hdus.Index())
+        {
+            bool isCompressed = request.Compression == OutputCompression.Lossless && hdu.Frames > 0;
+            if (isCompressed && i == 0)
+                yield return new OutputHdu { Label = hdu.Label, MakeCards = TileHeader.BarePrimary };
+            yield return isCompressed ? hdu with { Tiles = new TilePlan(hdu.SampleType, hdu.Axes), DataBytes = 0 } : hdu;
+        }
     }
+
+    /// <summary>Sets aside the bytes of each header.</summary>
+    private static List<OutputHdu> WithHeaderBytes(IEnumerable<OutputHdu> hdus) =>
+        [.. hdus.Select(hdu => hdu.MakeCards is { } makeCards ? hdu with { HeaderBytes = HeaderImage.BytesFor(CardCount(hdu, makeCards())) } : hdu)];
+
+    private static int CardCount(OutputHdu hdu, List<FitsCard> cards) =>
+        (hdu.Tiles is { } tiles ? TileHeader.Of(cards, tiles, 0, 0).Count : cards.Count) + (hdu.HoldsProvenance ? Reserve : 0);
 
     private static SampleType TypeOf(WriteRequest request, int first, int count, string label)
     {

@@ -26,7 +26,7 @@ internal static class PartList
         HduKind.Image => "image",
         HduKind.Empty => "empty",
         HduKind.Table => "table",
-        HduKind.CompressedImage => "compressed image",
+        HduKind.CompressedImage => $"image in compressed tiles ({hdu.Compression})",
         HduKind.RandomGroups => "random groups",
         _ => "extension of unknown type",
     };
@@ -36,8 +36,9 @@ internal static class PartList
         string shape = hdu.Kind switch
         {
             HduKind.Image => ImageLayout.Describe(hdu),
+            HduKind.CompressedImage => $"{ImageLayout.Describe(hdu)} in compressed tiles ({hdu.Compression})",
             HduKind.Empty => "no data",
-            HduKind.Table or HduKind.CompressedImage when hdu.Axes.Count == 2 => string.Create(CultureInfo.InvariantCulture, $"{hdu.Axes[1]} rows of {hdu.Axes[0]} bytes"),
+            HduKind.Table when hdu.Axes.Count == 2 => string.Create(CultureInfo.InvariantCulture, $"{hdu.Axes[1]} rows of {hdu.Axes[0]} bytes"),
             _ => string.Create(CultureInfo.InvariantCulture, $"{hdu.DataBytes} bytes"),
         };
         string role = hdu.Role switch

@@ -55,6 +55,28 @@ internal static class SampleEncoding
     /// <summary>Stored samples, little-endian, to bytes of a data unit. The spans have one length; they may be the same.</summary>
     public static void Encode(SampleType type, ReadOnlySpan<byte> stored, Span<byte> data) => Reverse(type, stored, data, 0);
 
+    /// <summary>Adds or takes half the range where the type has a sign convention: inverts the top bit of every little-endian sample.</summary>
+    public static void FlipSigns(SampleType type, Span<byte> stored)
+    {
+        if (Shift(type) == 0)
+            return;
+        switch (type.Size())
+        {
+            case 1:
+                Xor(stored, (byte)0x80);
+                break;
+            case 2:
+                Xor(MemoryMarshal.Cast<byte, ushort>(stored), (ushort)0x8000);
+                break;
+            case 4:
+                Xor(MemoryMarshal.Cast<byte, uint>(stored), 0x8000_0000);
+                break;
+            default:
+                Xor(MemoryMarshal.Cast<byte, ulong>(stored), 0x8000_0000_0000_0000);
+                break;
+        }
+    }
+
     /// <summary>
     /// Reverses the bytes of each sample; then adds or takes half the range, in integer arithmetic, where the type has a
     /// sign convention: its top bit, which is then in byte <paramref name="top"/>, is inverted.
@@ -106,5 +128,16 @@ internal static class SampleEncoding
         if (sizeof(T) >= 8)
             longs = (longs << 32) | (longs >>> 32);
         return longs.As<ulong, T>();
+    }
+
+    private static void Xor<T>(Span<T> samples, T pattern)
+        where T : unmanaged, IBinaryInteger<T>
+    {
+        Span<Vector<T>> wide = MemoryMarshal.Cast<T, Vector<T>>(samples);
+        Vector<T> patterns = new(pattern);
+        for (int i = 0; i < wide.Length; i++)
+            wide[i] ^= patterns;
+        for (int i = wide.Length * Vector<T>.Count; i < samples.Length; i++)
+            samples[i] ^= pattern;
     }
 }

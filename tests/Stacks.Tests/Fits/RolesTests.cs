@@ -177,17 +177,4 @@ public class RolesTests
         StackFormatException e = Assert.Throws<StackFormatException>(() => TwoOfEach().Open(folder, new ReadOptions { Extensions = [name] }));
         Assert.Contains("no image", e.Message, StringComparison.Ordinal);
     }
-
-    [NeedsTheory(Needs.RealDataNeed)]
-    [InlineData("m13_gzip.fits")]
-    [InlineData("m13_hcomp.fits")]
-    [InlineData("m13_plio.fits")]
-    [InlineData("m13_rice.fits")]
-    [InlineData("m13real_rice.fits")]
-    public void Compressed_images_are_refused_by_name(string name)
-    {
-        StackFormatException e = Assert.Throws<StackFormatException>(() => new Formats.Fits.FitsFormat().Open(RealData.File("astro", name), new ReadOptions()));
-        Assert.Contains("compressed", e.Message, StringComparison.Ordinal);
-        Assert.Contains($"funpack {name}", e.Message, StringComparison.Ordinal);
-    }
 }
