@@ -49,13 +49,29 @@ internal static class TileSamples
             if (DecodeIntegers(image, algorithm, bytes, part, integers) is { } problem)
                 return problem;
             if (isQuantised)
-                return "todo " + tile;
+            {
+                Restore(image, tile, entry, integers, stored);
+                return null;
+            }
+
             return Signed(type, stored, Narrow(type, integers, stored));
         }
         finally
         {
             ArrayPool<int>.Shared.Return(rented);
         }
+    }
+
+    /// <summary>Floating-point samples out of the integers that stand for them.</summary>
+    private static void Restore(TiledImage image, long tile, TileEntry entry, ReadOnlySpan<int> integers, Span<byte> stored)
+    {
+        long? blank = entry.HasBlank ? entry.Blank : null;
+        long? seed = image.Seed > 0 ? tile + image.Seed - 1 : null;
+        bool keepsZero = image.Quantisation == TileQuantisation.Dither2;
+        if (image.BitPix == -32)
+            Quantisation.Restore(integers, entry.Scale, entry.Zero, blank, seed, keepsZero, MemoryMarshal.Cast<byte, float>(stored));
+        else
+            Quantisation.Restore(integers, entry.Scale, entry.Zero, blank, seed, keepsZero, MemoryMarshal.Cast<byte, double>(stored));
     }
 
     /// <summary>The sign convention of the type, once its samples are there; the problem goes on.</summary>
