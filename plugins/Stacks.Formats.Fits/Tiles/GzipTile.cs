@@ -1,3 +1,4 @@
+using System.Buffers.Binary;
 using System.IO.Compression;
 using Stacks.Abstractions;
 
@@ -27,7 +28,11 @@ internal static class GzipTile
                 if (got < bytes.Length)
                     return $"it holds {got} bytes, not {bytes.Length}";
                 Span<byte> more = stackalloc byte[1];
-                return gzip.Read(more) == 0 ? null : $"it holds more than {bytes.Length} bytes";
+                if (gzip.Read(more) > 0)
+                    return $"it holds more than {bytes.Length} bytes";
+
+                // The base library does not mind a stream that is cut behind its last byte, before its checksum.
+                return BinaryPrimitives.ReadUInt32LittleEndian(stream[^sizeof(uint)..]) == (uint)bytes.Length ? null : "it is no whole gzip stream";
             }
             catch (Exception error) when (error is InvalidDataException or ArgumentOutOfRangeException)
             {
