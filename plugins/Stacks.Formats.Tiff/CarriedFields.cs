@@ -28,7 +28,7 @@ internal static class CarriedFields
             .Select(f => Load(file, directory, f));
 
     /// <summary>Fields that say how the image data are stored: the writer makes them anew.</summary>
-    private static bool IsStructure(ushort tag) => tag
+    public static bool IsStructure(ushort tag) => tag
         is Tag.ImageWidth or Tag.ImageLength or Tag.BitsPerSample or Tag.Compression or Tag.FillOrder
         or Tag.StripOffsets or Tag.SamplesPerPixel or Tag.RowsPerStrip or Tag.StripByteCounts or Tag.PlanarConfiguration
         or Tag.FreeOffsets or Tag.FreeByteCounts or Tag.Predictor or Tag.ColorMap

@@ -23,6 +23,8 @@ internal static class Deflate
     /// <returns>Null, or what is wrong with the data.</returns>
     public static unsafe string? Decode(ReadOnlySpan<byte> source, Span<byte> output, int longest)
     {
+        if (source.IsEmpty)
+            return "the Deflate data are empty";
         fixed (byte* start = source)
         {
             using UnmanagedMemoryStream stream = new(start, source.Length);
@@ -37,9 +39,10 @@ internal static class Deflate
                     got = inflater.Read(below);
                 return done <= longest ? null : "the Deflate data are longer than the page";
             }
-            catch (Exception error) when (error is InvalidDataException or ArgumentOutOfRangeException)
+            catch (Exception error) when (error is InvalidDataException or IOException or ArgumentOutOfRangeException)
             {
-                // The base library throws the second where damaged data end in the middle of its look-ahead.
+                // The base library throws the second where the data ask for a preset dictionary, and the third where damaged data
+                // end in the middle of its look-ahead.
                 return "the Deflate data are damaged";
             }
         }

@@ -55,17 +55,16 @@ internal sealed class PageIndex
     public SortedSet<ushort> TagsNotCarried { get; } = [];
 
     /// <summary>Walks over the file.</summary>
-    /// <param name="file">The file.</param>
-    /// <param name="allowTruncated">True to pass over pages that are not whole, instead of failing.</param>
+    /// <param name="file">The file; where it allows that, pages that are not whole are passed over.</param>
     /// <exception cref="StackFormatException">Broken, hostile, truncated, or of a kind that is refused by name.</exception>
-    public static PageIndex Walk(TiffFile file, bool allowTruncated)
+    public static PageIndex Walk(TiffFile file)
     {
         PageIndex index = new(file);
-        index.WalkChain(allowTruncated);
+        index.WalkChain();
         return index;
     }
 
-    private void WalkChain(bool allowTruncated)
+    private void WalkChain()
     {
         HashSet<long> seen = [];
         (int Page, string Why)? lost = null;
@@ -87,12 +86,13 @@ internal sealed class PageIndex
                 if (lost is { } before)
                     losses.Add(Loss(before.Page, pages.Count - 2, before.Why));
                 lost = null;
+                losses.AddRange(directory.Lost.Select(field => $"of page {pages.Count - 1} {field}"));
             }
             catch (CutOffException cut)
             {
                 string end = string.Create(CultureInfo.InvariantCulture, $"the file ends at byte {file.Length}");
                 firstCut ??= new StackFormatException(string.Create(CultureInfo.InvariantCulture, $"{where}, byte {cut.Offset}"), $"{cut.Message} should be here, {end}", CopyAgain, cut);
-                if (!allowTruncated)
+                if (!file.AllowTruncated)
                     throw firstCut;
                 lost ??= (pages.Count, string.Create(CultureInfo.InvariantCulture, $"{cut.Message} should be at byte {cut.Offset}, {end}"));
                 pages.Add(new Page(offset.Value, PageLayout.Lost, -1, -1));
@@ -148,7 +148,7 @@ internal sealed class PageIndex
             if (!file.Holds(offset, count))
                 throw new CutOffException(offset, string.Create(CultureInfo.InvariantCulture, $"its {layout.Grid.Word} {i} of {count} bytes"), next);
             total += count;
-            if (layout.Frame is not null && count < layout.Grid.BytesOf(i) / layout.LargestRatio)
+            if (layout.Frame is not null && count * layout.LargestRatio < layout.Grid.BytesOf(i))
                 throw new StackFormatException(
                     string.Create(CultureInfo.InvariantCulture, $"{where}, {layout.Grid.Word} {i}, byte {offset}"),
                     string.Create(CultureInfo.InvariantCulture, $"{count} bytes cannot hold the {layout.Grid.BytesOf(i)} bytes of samples they stand for"),

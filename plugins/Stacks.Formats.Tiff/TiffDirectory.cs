@@ -49,6 +49,9 @@ internal sealed class TiffDirectory
     /// <summary>Tags of a type this plugin does not know the size of: they cannot be carried.</summary>
     public List<ushort> Unknown { get; } = [];
 
+    /// <summary>Fields of a truncated file that say nothing about the samples and are cut off, a sentence each.</summary>
+    public List<string> Lost { get; } = [];
+
     /// <summary>Offset of the next directory; 0 after the last.</summary>
     public long Next { get; private set; }
 
@@ -131,7 +134,13 @@ internal sealed class TiffDirectory
         bool isInline = count <= file.OffsetSize / type.Size();
         long valueAt = isInline ? entryAt + inlineAt : file.Number(entry[inlineAt..]);
         if (count > file.Length / type.Size() || !file.Holds(valueAt, count * type.Size()))
-            throw new CutOffException(valueAt, string.Create(CultureInfo.InvariantCulture, $"tag {tag} with {count} values"), Next);
+        {
+            if (!file.AllowTruncated || CarriedFields.IsStructure(tag))
+                throw new CutOffException(valueAt, string.Create(CultureInfo.InvariantCulture, $"tag {tag} with {count} values"), Next);
+            Lost.Add(string.Create(CultureInfo.InvariantCulture, $"tag {tag} is lost: its {count} values should be at byte {valueAt}, the file ends at byte {file.Length}"));
+            return;
+        }
+
         ascending &= fields.Count == 0 || fields[^1].Tag < tag;
         fields.Add(new TiffField(tag, type, count, valueAt));
     }

@@ -12,9 +12,10 @@ internal sealed class TiffFile : IDisposable
 {
     private readonly SafeFileHandle handle;
 
-    private TiffFile(string path, SafeFileHandle handle)
+    private TiffFile(string path, SafeFileHandle handle, bool allowTruncated)
     {
         Path = path;
+        AllowTruncated = allowTruncated;
         this.handle = handle;
         Length = RandomAccess.GetLength(handle);
     }
@@ -24,6 +25,9 @@ internal sealed class TiffFile : IDisposable
 
     /// <summary>Bytes in the file when it was opened.</summary>
     public long Length { get; }
+
+    /// <summary>True to take what is whole of a truncated file.</summary>
+    public bool AllowTruncated { get; }
 
     /// <summary>True for byte order <c>MM</c>.</summary>
     public bool BigEndian { get; private set; }
@@ -38,16 +42,18 @@ internal sealed class TiffFile : IDisposable
     public int OffsetSize => IsBig ? 8 : 4;
 
     /// <summary>Opens a file and reads its header.</summary>
+    /// <param name="path">Path.</param>
+    /// <param name="allowTruncated">True to take what is whole of a truncated file.</param>
     /// <exception cref="InputMissingException">No such file.</exception>
     /// <exception cref="StackIOException">It cannot be opened.</exception>
     /// <exception cref="StackFormatException">The header is not one of TIFF.</exception>
-    public static TiffFile Open(string path)
+    public static TiffFile Open(string path, bool allowTruncated = false)
     {
         SafeFileHandle? handle = null;
         try
         {
             handle = File.OpenHandle(path, FileMode.Open, FileAccess.Read, FileShare.ReadWrite, FileOptions.RandomAccess);
-            TiffFile file = new(path, handle);
+            TiffFile file = new(path, handle, allowTruncated);
             file.ReadHeader();
             return file;
         }

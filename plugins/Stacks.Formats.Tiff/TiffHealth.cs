@@ -29,6 +29,8 @@ internal static class TiffHealth
         if (metadata.Xmp is { } packet && XmpPacket.Read(packet) is null)
             yield return new HealthFinding(true, "the XMP packet of page 0 is not well-formed: a result carries it in base64 inside its own packet");
 
+        ByteBuffer raw = new();
+        ByteBuffer stored = new();
         int compressed = 0;
         int damaged = 0;
         for (int f = 0; f < reader.FrameCount; f++)
@@ -37,7 +39,7 @@ internal static class TiffHealth
             if (!reader.IsCompressed(f))
                 continue;
             compressed++;
-            if (Damage(reader, f) is { } damage && ++damaged <= Named)
+            if (Damage(reader, f, raw, stored) is { } damage && ++damaged <= Named)
                 yield return new HealthFinding(true, damage);
         }
 
@@ -71,13 +73,12 @@ internal static class TiffHealth
         }
     }
 
-    private static string? Damage(TiffReader reader, int frame)
+    private static string? Damage(TiffReader reader, int frame, ByteBuffer raw, ByteBuffer stored)
     {
         try
         {
-            ByteBuffer raw = new();
             reader.Read(frame, raw);
-            reader.Decode(frame, raw.Written, new byte[reader.Layout(frame).StoredBytes]);
+            reader.Decode(frame, raw.Written, stored.Resize((int)reader.Layout(frame).StoredBytes));
             return null;
         }
         catch (StackFormatException error)

@@ -56,12 +56,12 @@ internal sealed class TiffReader : IStackReader
     /// <summary>Opens a file and walks over its pages.</summary>
     public static TiffReader Open(TiffFormat format, string path, ReadOptions options)
     {
-        TiffFile file = TiffFile.Open(path);
+        TiffFile file = TiffFile.Open(path, options.AllowTruncated);
         try
         {
             if (options.Extensions is { Count: > 0 } names)
                 throw new StackFormatException(path, $"the recipe names the extension {names[0]}, a TIFF file has none", "leave extensions out of the recipe's [input]");
-            return new TiffReader(format, file, PageIndex.Walk(file, options.AllowTruncated));
+            return new TiffReader(format, file, PageIndex.Walk(file));
         }
         catch
         {
