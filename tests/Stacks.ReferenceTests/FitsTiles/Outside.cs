@@ -45,33 +45,40 @@ internal static partial class Outside
         return (int.Parse(match.Groups[1].ValueSpan, CultureInfo.InvariantCulture), int.Parse(match.Groups[2].ValueSpan, CultureInfo.InvariantCulture));
     }
 
-    /// <summary>Frames of our reader against planes of astropy's: stored samples, but for float images their values.</summary>
-    public static void AssertAstropyAgrees(TemporaryFolder folder, string path)
+    /// <summary>
+    /// Frames of our reader against planes of astropy's: stored samples, NaN for NaN. Images that only one of them takes for
+    /// images would differ in number.
+    /// </summary>
+    public static void AssertAstropyAgrees(TemporaryFolder folder, params string[] paths)
     {
-        using IStackReader reader = Format.Open(path, new ReadOptions());
-        for (int frame = 0; frame < reader.FrameCount; frame++)
-            File.WriteAllBytes(folder.File(string.Create(CultureInfo.InvariantCulture, $"{frame}.raw")), PassThrough.Stored(reader, frame));
+        foreach (string path in paths)
+        {
+            using IStackReader reader = Format.Open(path, new ReadOptions());
+            string frames = folder.File(Path.GetFileName(path) + ".frames");
+            Directory.CreateDirectory(frames);
+            for (int frame = 0; frame < reader.FrameCount; frame++)
+                File.WriteAllBytes(Path.Combine(frames, string.Create(CultureInfo.InvariantCulture, $"{frame}.raw")), PassThrough.Stored(reader, frame));
+        }
+
         Python(
             """
-            import sys, warnings, numpy as np
+            import os, sys, warnings, numpy as np
             from astropy.io import fits
             warnings.simplefilter('ignore')
-            path, folder, count = sys.argv[1], sys.argv[2], int(sys.argv[3])
-            frame = 0
-            with fits.open(path) as f:
-                for hdu in f:
-                    if not isinstance(hdu, (fits.PrimaryHDU, fits.ImageHDU, fits.CompImageHDU)) or hdu.data is None or hdu.name == 'CHANGES':
-                        continue
-                    for plane in hdu.data.reshape((-1,) + hdu.data.shape[-2:]):
-                        ours = np.fromfile(f'{folder}/{frame}.raw', plane.dtype.newbyteorder('<')).reshape(plane.shape)
-                        theirs = plane.astype(ours.dtype)
-                        assert np.array_equal(ours, theirs, equal_nan=ours.dtype.kind == 'f'), (hdu.name, frame, np.argwhere(ours != theirs)[:5], ours[ours != theirs][:5], theirs[ours != theirs][:5])
-                        frame += 1
-            assert frame == count, (frame, count)
+            for path in sys.argv[2:]:
+                folder, frame = f'{sys.argv[1]}/{os.path.basename(path)}.frames', 0
+                with fits.open(path) as f:
+                    for hdu in f:
+                        if not isinstance(hdu, (fits.PrimaryHDU, fits.ImageHDU, fits.CompImageHDU)) or hdu.data is None or hdu.name == 'CHANGES':
+                            continue
+                        for plane in hdu.data.reshape((-1,) + hdu.data.shape[-2:]):
+                            ours = np.fromfile(f'{folder}/{frame}.raw', plane.dtype.newbyteorder('<')).reshape(plane.shape)
+                            theirs = plane.astype(ours.dtype)
+                            assert np.array_equal(ours, theirs, equal_nan=ours.dtype.kind == 'f'), (path, frame, np.argwhere(ours != theirs)[:5], ours[ours != theirs][:5], theirs[ours != theirs][:5])
+                            frame += 1
+                assert frame == len(os.listdir(folder)), (path, frame)
             """,
-            path,
-            folder.Path,
-            reader.FrameCount.ToString(CultureInfo.InvariantCulture));
+            [folder.Path, .. paths]);
     }
 
     /// <summary>Frames of two files by our reader: layouts and samples.</summary>
