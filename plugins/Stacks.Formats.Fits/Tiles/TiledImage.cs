@@ -178,6 +178,8 @@ internal sealed record TiledImage
             HeapOffset = heapOffset,
             HeapBytes = hdu.DataBytes - heapOffset,
         };
+        if (image.BytePix == 3)
+            throw new StackFormatException($"{table.Where}, parameter BYTEPIX of the compression (ZVALi)", "samples of 3 bytes", GetAgain);
         if (image.Compressed is null && image.Gzipped is null && image.Uncompressed is null)
             throw new StackFormatException(table.Where, "no column holds the tiles (COMPRESSED_DATA, GZIP_COMPRESSED_DATA or UNCOMPRESSED_DATA)", GetAgain);
         if (!isFloat && (image.ScaleColumn ?? image.ZeroColumn) is { } scaling)
