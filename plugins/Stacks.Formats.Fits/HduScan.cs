@@ -84,14 +84,14 @@ internal sealed class HduScan
 
         (int bitPix, long[] axes) = Array(header, "");
         HduKind kind = KindOf(header, index, axes);
-        long dataBytes = DataBytes(header, kind, bitPix, axes, index);
+        long dataBytes = DataBytes(header, "", kind, bitPix, axes, index);
         long dataOffset = offset + header.Bytes;
         bool isCompressed = kind == HduKind.CompressedImage;
         bool isEmpty = kind == HduKind.Image && dataBytes == 0;
         if (isCompressed)
         {
             (bitPix, axes) = Array(header, "Z");
-            isEmpty = DataBytes(header, HduKind.Image, bitPix, axes, 0) == 0;
+            isEmpty = DataBytes(header, "Z", HduKind.Image, bitPix, axes, 0) == 0;
         }
 
         return new Hdu
@@ -137,7 +137,7 @@ internal sealed class HduScan
     }
 
     /// <summary>|BITPIX| / 8 * GCOUNT * (PCOUNT + NAXIS1 * NAXIS2 * ...): Standard 4.0, equations 1, 2 and 4.</summary>
-    private static long DataBytes(FitsHeader header, HduKind kind, int bitPix, long[] axes, int index)
+    private static long DataBytes(FitsHeader header, string before, HduKind kind, int bitPix, long[] axes, int index)
     {
         // PCOUNT and GCOUNT mean nothing in an ordinary primary header, where some programs write them all the same.
         bool hasGroups = index > 0 || kind == HduKind.RandomGroups;
@@ -167,7 +167,7 @@ internal sealed class HduScan
         }
         catch (OverflowException e)
         {
-            throw new StackFormatException($"{header.Where}, keywords NAXISn", "the size they give does not fit 64 bits", GetAgain, e);
+            throw new StackFormatException($"{header.Where}, keywords {before}NAXISn", "the size they give does not fit 64 bits", GetAgain, e);
         }
     }
 }
