@@ -13,9 +13,11 @@ public static class PassThrough
     /// <param name="mask">Write a change mask: <paramref name="flag"/>, and the frame's number in its first sample.</param>
     /// <param name="flag">Flags of every sample.</param>
     /// <param name="change">Changes stored samples before they are encoded, and their type.</param>
-    /// <param name="compress">Compress losslessly.</param>
+    /// <param name="compress">Compress losslessly; short for <paramref name="compression"/>.</param>
+    /// <param name="compression">How samples are compressed.</param>
     public static ProvenanceRecord Run(
-        IStackReader source, IStackFormat format, string target, bool mask = false, SampleFlags flag = SampleFlags.None, TypeChange? change = null, bool compress = false)
+        IStackReader source, IStackFormat format, string target, bool mask = false, SampleFlags flag = SampleFlags.None, TypeChange? change = null, bool compress = false,
+        OutputCompression compression = OutputCompression.None)
     {
         WriteRequest request = new()
         {
@@ -23,7 +25,7 @@ public static class PassThrough
             Path = target,
             SampleTypeOf = frame => change?.Type ?? source.Layout(frame).SampleType,
             Mask = mask,
-            Compression = compress ? OutputCompression.Lossless : OutputCompression.None,
+            Compression = compress ? OutputCompression.Lossless : compression,
             Created = Created,
         };
         List<LedgerRow> ledger = [];

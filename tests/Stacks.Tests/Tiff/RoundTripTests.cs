@@ -97,6 +97,36 @@ public sealed class RoundTripTests
         Assert.Contains("frame 1", refusal.Message, StringComparison.Ordinal);
     }
 
+    /// <summary>A frame of two strips of 256 KiB costs objects, not buffers, once everything has been used before.</summary>
+    [Theory]
+    [InlineData(OutputCompression.None)]
+    [InlineData(OutputCompression.Deflate)]
+    [InlineData(OutputCompression.Zstd)]
+    public void Coding_a_frame_allocates_nothing_big(OutputCompression compression)
+    {
+        using TemporaryFolder folder = new();
+        foreach (SampleType type in (SampleType[])[SampleType.UInt16, SampleType.Float32])
+        {
+            FrameLayout layout = new() { Width = 512, Height = 1024 / type.Size(), SampleType = type };
+            byte[] samples = TinyTiff.SomeSamples((int)layout.Length, 8 * type.Size(), type == SampleType.Float32 ? 3 : 1, 1);
+            LayoutsOnly source = new(layout, 1);
+            using TiffWriter writer = new(new WriteRequest { Source = source, Path = folder.File($"{type}.tif"), SampleTypeOf = _ => type, Compression = compression, Created = TiffLoop.Created });
+            EncodedFrame encoded = new();
+            byte[] work = [.. samples];
+            long Once()
+            {
+                samples.CopyTo(work, 0);
+                long before = GC.GetAllocatedBytesForCurrentThread();
+                writer.Encode(0, work, [], encoded);
+                return GC.GetAllocatedBytesForCurrentThread() - before;
+            }
+
+            Once();
+            Once();
+            Assert.InRange(Once(), 0, 4096);
+        }
+    }
+
     [Fact]
     public void A_new_sample_type_is_written()
     {
