@@ -49,6 +49,9 @@ internal sealed class FitsReader : IStackReader
     public IReadOnlyList<StackPart> Parts { get; }
 
     /// <inheritdoc/>
+    public IReadOnlyList<string> Losses => [.. Truncation.Losses(this)];
+
+    /// <inheritdoc/>
     public IReadOnlyList<HeaderFact> Facts { get; }
 
     /// <summary>The file.</summary>

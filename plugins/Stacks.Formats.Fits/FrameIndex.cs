@@ -1,4 +1,3 @@
-using System.Globalization;
 using Stacks.Abstractions;
 using Stacks.Formats.Fits.Tiles;
 
@@ -32,13 +31,13 @@ internal static class FrameIndex
             }
 
             if (hdu.IsTruncated && !options.AllowTruncated)
-                throw Truncated(hdu, frames);
+                throw Truncation.Fault(hdu, frames);
             if (frames > int.MaxValue)
                 throw new StackFormatException(hdu.Where, $"{frames} frames are more than 2^31", "cut the stack into shorter ones");
         }
 
         if (reader.HeaderIsTruncated && !options.AllowTruncated)
-            throw new StackFormatException(string.Create(CultureInfo.InvariantCulture, $"{reader.Path}, HDU {hdus.Count} at byte {reader.ScannedEnd}"), $"the file ends inside this header, at byte {reader.File.Length}", "copy the file again from where it was made");
+            throw Truncation.HeaderFault(reader, hdus.Count);
         if (frames == 0)
             throw NoFrames(reader.Path, hdus);
 
@@ -49,15 +48,6 @@ internal static class FrameIndex
         }
 
         return hdus;
-    }
-
-    private static StackFormatException Truncated(Hdu hdu, long frames)
-    {
-        long end = hdu.DataOffset + hdu.PresentBytes;
-        string where = hdu.Role == HduRole.Science && hdu.Tiles is null
-            ? string.Create(CultureInfo.InvariantCulture, $"{hdu.Where}, frame {frames} at byte {FitsReader.OffsetOf(hdu, hdu.Planes)}")
-            : string.Create(CultureInfo.InvariantCulture, $"{hdu.Where}, data at byte {hdu.DataOffset}");
-        return new StackFormatException(where, string.Create(CultureInfo.InvariantCulture, $"truncated: the file ends at byte {end}, the header promises data to byte {(Int128)hdu.DataOffset + hdu.DataBytes}"), "copy the file again from where it was made");
     }
 
     private static StackFormatException NoFrames(string path, List<Hdu> hdus)

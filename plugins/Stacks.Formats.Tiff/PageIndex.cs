@@ -91,7 +91,7 @@ internal sealed class PageIndex
             catch (CutOffException cut)
             {
                 string end = string.Create(CultureInfo.InvariantCulture, $"the file ends at byte {file.Length}");
-                firstCut ??= new StackFormatException(string.Create(CultureInfo.InvariantCulture, $"{where}, byte {cut.Offset}"), $"{cut.Message} should be here, {end}", CopyAgain, cut);
+                firstCut ??= new StackFormatException(string.Create(CultureInfo.InvariantCulture, $"{where}, byte {cut.Offset}"), $"{cut.Message} should be here, {end}", CopyAgain + ", or take its whole pages with --salvage", cut);
                 if (!file.AllowTruncated)
                     throw firstCut;
                 lost ??= (pages.Count, string.Create(CultureInfo.InvariantCulture, $"{cut.Message} should be at byte {cut.Offset}, {end}"));
