@@ -43,7 +43,7 @@ internal sealed class FitsHeader
         byte[] block = new byte[FitsBlock.Bytes];
         for (int count = 1; count <= MostBlocks; count++, offset += block.Length)
         {
-            if (file.Length - offset < block.Length)
+            if (file.Present(offset, block.Length) < block.Length)
                 return null;
             file.Read(block, offset);
             for (int at = 0; at < block.Length; at += FitsBlock.CardBytes)

@@ -22,6 +22,10 @@ internal sealed class FitsReader : IStackReader
             Primary = scan.Primary;
             ScannedEnd = scan.End;
             HeaderIsTruncated = scan.HeaderIsTruncated;
+            // Reading a gzipped file to its end is what checks its checksum.
+            BytesBehind = File.Present(ScannedEnd, File.IsGzipped ? 1L << 30 : long.MaxValue);
+            if (File.Damage is { } damage && !options.AllowTruncated)
+                throw new StackFormatException(path, damage, Truncation.Remedy);
             HduRoles.Assign(path, scan.Hdus, options.Extensions);
             Hdus = FrameIndex.Build(this, scan.Hdus, options);
             science = Hdus.Where(h => h.Role == HduRole.Science).ToArray();
@@ -65,6 +69,9 @@ internal sealed class FitsReader : IStackReader
 
     /// <summary>Offset behind the last HDU; other bytes may follow.</summary>
     public long ScannedEnd { get; }
+
+    /// <summary>Bytes behind the last HDU; of a gzipped file they are counted up to 1 GiB.</summary>
+    public long BytesBehind { get; }
 
     /// <summary>True when the file ends inside a header.</summary>
     public bool HeaderIsTruncated { get; }

@@ -36,7 +36,7 @@ internal sealed class HduScan
     {
         HduScan scan = new();
         Span<byte> start = stackalloc byte[9];
-        for (int number = 0; file.Length - scan.End >= start.Length; number++)
+        for (int number = 0; file.Present(scan.End, start.Length) == start.Length; number++)
         {
             int index = scan.Hdus.Count;
             file.Read(start, scan.End);
@@ -60,7 +60,7 @@ internal sealed class HduScan
             }
 
             scan.Hdus.Add(hdu);
-            scan.End = hdu.IsTruncated ? file.Length : Math.Min(hdu.EndOffset, file.Length);
+            scan.End = hdu.DataOffset + (hdu.IsTruncated ? hdu.PresentBytes : file.Present(hdu.DataOffset, hdu.EndOffset - hdu.DataOffset));
         }
 
         return scan.Hdus.Count > 0 ? scan : throw NoHdu(file, scan.HeaderIsTruncated);
@@ -68,10 +68,10 @@ internal sealed class HduScan
 
     private static StackFormatException NoHdu(FitsFile file, bool headerIsTruncated)
     {
-        byte[] start = new byte[Math.Min(9, file.Length)];
+        byte[] start = new byte[file.Present(0, 9)];
         file.Read(start, 0);
-        if (start is [0x1F, 0x8B, ..])
-            return new StackFormatException(file.Path, "a gzipped file, which is not read yet", $"unpack it first: gunzip -k {Path.GetFileName(file.Path)}");
+        if (file.Damage is { } damage)
+            return new StackFormatException(file.Path, damage, GetAgain);
         if (headerIsTruncated)
             return new StackFormatException($"{file.Path}, byte {file.Length}", "the file ends inside its first header", GetAgain);
         return new StackFormatException($"{file.Path}, byte 0", "not FITS: it does not begin with 'SIMPLE  ='", "check that this is the file you mean");
@@ -107,7 +107,7 @@ internal sealed class HduScan
             HeaderOffset = offset,
             DataOffset = dataOffset,
             DataBytes = dataBytes,
-            PresentBytes = Math.Min(dataBytes, file.Length - dataOffset),
+            PresentBytes = file.Present(dataOffset, dataBytes),
         };
     }
 

@@ -12,6 +12,8 @@ internal static class HealthCheck
     /// <summary>The findings, HDU by HDU; reads the whole file where there are checksums.</summary>
     public static IEnumerable<HealthFinding> Of(FitsReader reader, CancellationToken cancellation)
     {
+        if (reader.File.Damage is { } damage)
+            yield return new HealthFinding(true, damage);
         bool hasChecksum = false;
         foreach (Hdu hdu in reader.Hdus)
         {
@@ -22,7 +24,7 @@ internal static class HealthCheck
                 continue;
             }
 
-            if (hdu.EndOffset > reader.File.Length)
+            if (reader.File.Present(hdu.DataOffset, hdu.EndOffset - hdu.DataOffset) < hdu.EndOffset - hdu.DataOffset)
                 yield return new HealthFinding(true, string.Create(CultureInfo.InvariantCulture, $"{name}: the last block is not filled up: the file ends at byte {reader.File.Length}, not {hdu.EndOffset}; no sample is lost"));
             FitsHeader header = reader.ReadStoredHeader(hdu);
             string? dataSum = header.OwnText("DATASUM")?.Trim();
@@ -46,8 +48,8 @@ internal static class HealthCheck
             yield return new HealthFinding(false, "the file has no checksums");
         if (reader.HeaderIsTruncated)
             yield return new HealthFinding(true, string.Create(CultureInfo.InvariantCulture, $"HDU {reader.Hdus.Count} at byte {reader.ScannedEnd}: the file ends inside its header"));
-        else if (reader.File.Length > reader.ScannedEnd)
-            yield return new HealthFinding(true, string.Create(CultureInfo.InvariantCulture, $"{reader.File.Length - reader.ScannedEnd} bytes from byte {reader.ScannedEnd} on belong to no HDU"));
+        else if (reader.BytesBehind > 0)
+            yield return new HealthFinding(true, string.Create(CultureInfo.InvariantCulture, $"{reader.BytesBehind} bytes from byte {reader.ScannedEnd} on belong to no HDU"));
     }
 
     private static HealthFinding Truncation(Hdu hdu, string name)

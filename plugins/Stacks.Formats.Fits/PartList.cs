@@ -15,8 +15,8 @@ internal static class PartList
         List<StackPart> parts = reader.Hdus.Select(hdu => Describe(hdu, masksInUse)).ToList();
         if (reader.HeaderIsTruncated)
             parts.Add(new StackPart(string.Create(CultureInfo.InvariantCulture, $"HDU {reader.Hdus.Count}"), "truncated inside its header", "unknown", "not carried"));
-        else if (reader.File.Length > reader.ScannedEnd)
-            parts.Add(new StackPart("bytes behind the last HDU", string.Create(CultureInfo.InvariantCulture, $"{reader.File.Length - reader.ScannedEnd} bytes"), "not FITS", "not carried"));
+        else if (reader.BytesBehind > 0)
+            parts.Add(new StackPart("bytes behind the last HDU", string.Create(CultureInfo.InvariantCulture, $"{reader.BytesBehind} bytes"), "not FITS", "not carried"));
         return parts;
     }
 

@@ -6,7 +6,8 @@ namespace Stacks.Formats.Fits;
 /// <summary>What is said of a file that ends early: as a fault, or as what is missing of a file that is read all the same.</summary>
 internal static class Truncation
 {
-    private const string Remedy = "copy the file again from where it was made, or take its whole frames with --salvage";
+    /// <summary>What a user can do.</summary>
+    public const string Remedy = "copy the file again from where it was made, or take its whole frames with --salvage";
 
     /// <summary>An HDU is cut, and the file must be whole.</summary>
     /// <param name="hdu">The HDU.</param>
@@ -28,6 +29,8 @@ internal static class Truncation
     /// <summary>A sentence for each part that is missing.</summary>
     public static IEnumerable<string> Losses(FitsReader reader)
     {
+        if (reader.File.Damage is { } damage)
+            yield return damage;
         foreach (Hdu hdu in reader.Hdus.Where(h => h.IsTruncated))
         {
             string name = string.Create(CultureInfo.InvariantCulture, $"HDU {hdu.Index} ({hdu.Label})");

@@ -179,7 +179,7 @@ public class HostileTests
     }
 
     [Fact]
-    public void A_gzipped_file_is_recognised_and_refused_by_name()
+    public void A_gzipped_file_is_recognised()
     {
         using TemporaryFolder folder = new();
         using MemoryStream packed = new();
@@ -187,7 +187,7 @@ public class HostileTests
             gzip.Write(Whole);
         byte[] bytes = packed.ToArray();
         Assert.True(Format.Recognises(bytes.AsSpan(0, Math.Min(4096, bytes.Length))));
-        Assert.Contains("gunzip", Assert.Throws<StackFormatException>(() => Open(folder, bytes)).Message, StringComparison.Ordinal);
+        Assert.Contains("the gzip stream is damaged", Assert.Throws<StackFormatException>(() => Open(folder, bytes[..3])).Message, StringComparison.Ordinal);
     }
 
     [Fact]
