@@ -173,9 +173,15 @@ internal sealed class FitsWriter : IStackWriter
     }
 
     /// <summary>What of the source is not in the output.</summary>
-    private IEnumerable<string> Losses() => request.Source.Parts
-        .Where(part => part.Fate.Contains("not carried", StringComparison.Ordinal) || part.Fate.StartsWith("truncated", StringComparison.Ordinal))
-        .Select(part => $"{part.Name} of the source: {part.Fate}");
+    private IEnumerable<string> Losses()
+    {
+        IEnumerable<StackPart> lost = request.Source is FitsReader
+            ? request.Source.Parts.Where((part, i) => part.Fate.Contains("not carried", StringComparison.Ordinal)
+                || part.Fate.StartsWith("truncated", StringComparison.Ordinal)
+                || (!request.Carry && i > 0 && part.Role != "science"))
+            : request.Source.Parts.Where(part => part.Role is not ("science" or "empty"));
+        return lost.Select(part => $"{part.Name} of the source: {(part.Fate == "carried" ? "not carried" : part.Fate)} ({part.Role}, {part.Shape})");
+    }
 
     /// <summary>EXTVER for an extension that an earlier run may have written too.</summary>
     private long NextVersion(string name) => request.Source is FitsReader source

@@ -6,8 +6,6 @@ namespace Stacks.Formats.Fits;
 /// <summary>Numbers the science planes of a file and refuses, by name, what cannot be read.</summary>
 internal static class FrameIndex
 {
-    private const int MostAxes = 4;
-
     /// <summary>The HDUs with layouts, frame numbers and masks.</summary>
     /// <exception cref="StackFormatException">No science frame, truncated, or of a kind that is refused.</exception>
     public static IReadOnlyList<Hdu> Build(FitsReader reader, List<Hdu> hdus, ReadOptions options)
@@ -16,8 +14,6 @@ internal static class FrameIndex
         for (int i = 0; i < hdus.Count; i++)
         {
             Hdu hdu = hdus[i];
-            if (hdu.Role == HduRole.Science && hdu.Axes.Count > MostAxes)
-                throw new StackFormatException($"{hdu.Where}, keyword NAXIS", $"an image of {hdu.Axes.Count} axes; stacks have 2, 3 or 4", "cut the array into cubes");
             if (hdu.Role is HduRole.Science or HduRole.QualityMask)
                 hdus[i] = hdu = hdu with { Layout = ImageLayout.Read(hdu, reader.ReadHeader(hdu)) };
             if (hdu.Layout is not null && hdu.Kind == HduKind.CompressedImage)

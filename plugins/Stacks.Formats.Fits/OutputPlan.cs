@@ -15,13 +15,16 @@ internal static class OutputPlan
     public static IReadOnlyList<OutputHdu> Of(WriteRequest request) =>
         WithHeaderBytes(Compressed(request, WithProvenance(request.Source is FitsReader fits ? FromFits(request, fits) : FromOther(request))));
 
-    /// <summary>Every HDU of a FITS source, in order, but for truncated ones that hold no whole frame.</summary>
+    /// <summary>
+    /// Every HDU of a FITS source, in order, but for truncated ones that hold no whole frame; without carrying, the primary
+    /// HDU and those with frames.
+    /// </summary>
     private static IEnumerable<OutputHdu> FromFits(WriteRequest request, FitsReader source)
     {
         foreach (Hdu hdu in source.Hdus)
         {
             bool holdsFrames = hdu.Role == HduRole.Science && hdu.Planes > 0;
-            if (hdu.Index > 0 && hdu.IsTruncated && !holdsFrames)
+            if (hdu.Index > 0 && !holdsFrames && (hdu.IsTruncated || !request.Carry))
                 continue;
             if (holdsFrames)
             {

@@ -61,6 +61,8 @@ internal static class PlanReport
         Line("output", $"{plan.OutputFormat.Id}, {string.Join(" | ", plan.Kinds.Select(k => k.Output.Name()).Distinct())}, "
             + $"{Describe.Name(plan.Recipe.Output.Compression)}, {(plan.WriteMask ? "with" : "without")} change mask"
             + (plan.Overwrite ? ", replacing what is there" : ""));
+        if (LeftOut.Sentence(plan) is { } leftOut)
+            Line("", leftOut);
         Line("machine", $"{plan.Workers} workers, {plan.FramesInFlight} frames in flight, {ByteSize.Show(plan.Memory!.For(plan.FramesInFlight))} needed "
             + $"of {ByteSize.Show(resources.MemoryBytes)} ({resources.MemoryOrigin})");
         Line("recipe", $"sha256 {plan.RecipeDigest}");
@@ -99,6 +101,7 @@ internal static class PlanReport
         Frames = plan.Reader.FrameCount,
         Compression = Describe.Name(plan.Recipe.Output.Compression),
         ChangeMask = plan.WriteMask,
+        NotCarried = LeftOut.Of(plan).Select(p => p.Name),
         plan.Workers,
         plan.FramesInFlight,
         MemoryBytes = plan.Memory!.For(plan.FramesInFlight),

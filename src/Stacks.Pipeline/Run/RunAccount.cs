@@ -64,6 +64,8 @@ internal sealed class RunAccount(RunPlan plan)
                 ledger.Sum(r => r.FluxOut)),
             Remarks = [.. SmoothingRemarks(), .. Warnings],
         };
+        if (LeftOut.Sentence(plan) is { } leftOut)
+            Warnings = [.. Warnings, leftOut]; // the writers name each part in the result
     }
 
     /// <summary>A step as it took effect; a parameter that resolved differently for different frames shows each value.</summary>

@@ -88,9 +88,10 @@ internal sealed class FitsBytes
                     : otherwise;
             bool isExtension = cards[0].StartsWith("XTENSION", StringComparison.Ordinal);
             long samples = Value("NAXIS", 0) == 0 ? 0 : 1;
-            for (int i = 1; i <= Value("NAXIS", 0); i++)
+            bool isGroups = cards.Any(c => c.StartsWith("GROUPS  =                    T", StringComparison.Ordinal));
+            for (int i = isGroups ? 2 : 1; i <= Value("NAXIS", 0); i++)
                 samples *= Value($"NAXIS{i}", 0);
-            long size = Math.Abs(Value("BITPIX", 8)) / 8 * (isExtension ? Value("GCOUNT", 1) : 1) * ((isExtension ? Value("PCOUNT", 0) : 0) + samples);
+            long size = Math.Abs(Value("BITPIX", 8)) / 8 * (isExtension || isGroups ? Value("GCOUNT", 1) : 1) * ((isExtension || isGroups ? Value("PCOUNT", 0) : 0) + samples);
             hdus.Add((cards, file[at..(int)(at + size)]));
             at += (int)((size + 2879) / 2880 * 2880);
         }
