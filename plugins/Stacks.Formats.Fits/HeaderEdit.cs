@@ -4,12 +4,11 @@ using Stacks.Abstractions;
 namespace Stacks.Formats.Fits;
 
 /// <summary>
-/// The source's header as it goes on: every card verbatim and in its order, but for those that no longer hold.
+/// The source's header as it goes on: every card verbatim and in its order, but for those of <see cref="CardChanges"/>.
 /// </summary>
 internal static class HeaderEdit
 {
-    private static readonly string[] NeverCarried = ["CHECKSUM", "DATASUM", "DATAMIN", "DATAMAX"];
-    private static readonly string[] ScalingKeywords = ["BZERO", "BSCALE", "BLANK"];
+    private static readonly string[] NeverCarried = [.. CardChanges.Checksums.Keywords, .. CardChanges.Extremes.Keywords];
 
     /// <summary>The cards of a header over frames.</summary>
     /// <param name="source">The source's header.</param>
@@ -24,7 +23,7 @@ internal static class HeaderEdit
         if (type == hdu.Layout!.SampleType)
             return cards;
 
-        cards.RemoveAll(card => ScalingKeywords.Any(card.Is));
+        cards.RemoveAll(card => CardChanges.Scaling.Keywords.Any(card.Is) && !card.Is("BITPIX"));
         Replace(cards, FitsCard.Integer("BITPIX", SampleEncoding.BitPix(type), ""));
         if (SampleEncoding.Shift(type) != 0)
             cards.InsertRange(AfterAxes(cards), Shift(type));
