@@ -1,6 +1,7 @@
 using System.Security.Cryptography;
 using Stacks.Abstractions;
-using Stacks.Pipeline;
+using Stacks.Formats.Fits;
+using Stacks.Formats.Tiff;
 using Stacks.Tests.Tiff;
 using Stacks.TestSupport;
 using Xunit;
@@ -17,9 +18,6 @@ public class MatrixTests
     private const int Width = 19;
     private const int Height = 14;
     private const int Frames = 2;
-
-    private static readonly PluginCatalogue Catalogue = PluginCatalogue.Load(Path.GetDirectoryName(Checkout.Host)!, []);
-    private static readonly Resources Machine = new(2, 1L << 30, "the test");
 
     public static TheoryData<SampleType> Types => [.. Enum.GetValues<SampleType>()];
 
@@ -85,13 +83,10 @@ public class MatrixTests
         /// <summary>Runs an empty recipe, reads the result back and returns its path.</summary>
         public string Run(string source, string format, string compression)
         {
-            Recipe recipe = RecipeReader.Parse($"[output]\nformat = \"{format}\"\ncompression = \"{compression}\"\n", folder.File("r.toml"));
             string target = folder.File($"{made.Count}-{Path.GetFileNameWithoutExtension(source)}-{compression}.{format}");
-            NamedOutput item = Assert.Single(OutputNaming.Name([source], folder.File("out"), recipe, Catalogue)) with { Output = target };
-            using RunPlan plan = new RunPlanner(recipe, Catalogue, Machine, false).Plan(item);
-            StackRun.Execute(plan, null, CancellationToken.None);
+            HostRun.Of($"[output]\nformat = \"{format}\"\ncompression = \"{compression}\"\n", source, target);
 
-            using IStackReader reader = Catalogue.Format(format)!.Format.Open(target, new ReadOptions());
+            using IStackReader reader = (format == "fits" ? (IStackFormat)new FitsFormat() : new TiffFormat()).Open(target, new ReadOptions());
             Assert.Equal((Frames, type, Width, Height), (reader.FrameCount, reader.Layout(0).SampleType, reader.Layout(0).Width, reader.Layout(0).Height));
             for (int f = 0; f < Frames; f++)
                 Assert.Equal(frames[f], PassThrough.Stored(reader, f));

@@ -1,5 +1,4 @@
 using Stacks.Formats.Fits;
-using Stacks.Pipeline;
 using Stacks.TestSupport;
 using Xunit;
 
@@ -12,8 +11,6 @@ namespace Stacks.Tests.Fits;
 public sealed class HeaderDiffTests : IDisposable
 {
     private const string AdaptiveMedian = "[noise]\nfrom = \"frame\"\n[[step]]\nfilter = \"adaptive-median\"\npsf_fwhm = 2\n";
-    private static readonly PluginCatalogue Catalogue = PluginCatalogue.Load(Path.GetDirectoryName(Checkout.Host)!, []);
-
     private readonly TemporaryFolder folder = new();
 
     public void Dispose() => folder.Dispose();
@@ -64,10 +61,7 @@ public sealed class HeaderDiffTests : IDisposable
 
     private byte[] Run(string file, string recipe)
     {
-        Recipe parsed = RecipeReader.Parse(recipe, folder.File("r.toml"));
-        NamedOutput item = Assert.Single(OutputNaming.Name([file], folder.File("out"), parsed, Catalogue)) with { Output = folder.File("out.fits") };
-        using RunPlan plan = new RunPlanner(parsed, Catalogue, new Resources(2, 1L << 30, "the test"), overwrite: true).Plan(item);
-        StackRun.Execute(plan, null, CancellationToken.None);
+        HostRun.Of(recipe, file, folder.File("out.fits"));
         return File.ReadAllBytes(folder.File("out.fits"));
     }
 
