@@ -12,9 +12,9 @@ internal static class InspectVerb
         Command verb = new("inspect", $"""
             Shows what stacks are and whether they are whole: shape, sample type, parts, header facts, the values of up
             to {StackInspector.MostFrames} frames at even distances, checksums. Changes nothing. Exit code 0 when every stack can be
-            read and is whole, 65 when one is damaged.
+            read and is whole, 65 when one is damaged. A folder or a pattern is one stack of all its files, in natural order.
             """);
-        Argument<string[]> stacks = CommonOptions.Stacks("the stacks to look at");
+        Argument<string[]> stacks = CommonOptions.Stacks("the stacks to look at: files, folders of them, or patterns such as 'night/*.fits'");
         Option<string[]> plugins = CommonOptions.Plugins();
         Option<bool> json = CommonOptions.Json();
         verb.Arguments.Add(stacks);
@@ -34,7 +34,9 @@ internal static class InspectVerb
         {
             try
             {
-                StackInspection found = StackInspector.Inspect(path, catalogue, stop.Token);
+                InputSet input = InputFiles.Of([path], catalogue).Single();
+                InputReport.Skipped(input);
+                StackInspection found = StackInspector.Inspect(input, catalogue, stop.Token);
                 codes.Add(found.IsBroken ? ExitCodes.BadInput : ExitCodes.Done);
                 if (json)
                     documents.Add(InspectReport.Facts(found));

@@ -11,7 +11,7 @@ internal static class RunVerb
     {
         Command verb = new("run", "Runs a recipe over one or more stacks. The inputs are never changed.");
         Argument<string> recipe = new("RECIPE") { Description = "the recipe, a TOML file" };
-        Argument<string[]> stacks = CommonOptions.Stacks("the stacks to clean");
+        Argument<string[]> stacks = CommonOptions.Stacks("the stacks to clean: files, folders of them, or patterns such as 'night/*.fits'");
         CommonOptions.RefuseOptions(recipe);
         Option<string> output = new("-o", "--output")
         {
@@ -58,7 +58,10 @@ internal static class RunVerb
     {
         Recipe recipe = RecipeReader.Read(recipePath);
         RunPlanner planner = new(recipe, catalogue, resources, overwrite, salvage);
-        IReadOnlyList<NamedOutput> items = OutputNaming.Name(stacks, output, recipe, catalogue);
+        IReadOnlyList<InputSet> inputs = InputFiles.Of(stacks, catalogue);
+        foreach (InputSet input in inputs)
+            InputReport.Skipped(input);
+        IReadOnlyList<NamedOutput> items = OutputNaming.Name([.. inputs.SelectMany(i => i.Files)], output, recipe, catalogue);
         using StopSignals stop = new();
         IReadOnlyList<NightEntry> entries = dryRun
             ? NightRun.Execute(items, planner, null, new FaultLines(verbose), stop.Token)

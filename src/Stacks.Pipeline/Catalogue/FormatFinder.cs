@@ -23,6 +23,20 @@ public static class FormatFinder
         return catalogue.Formats.FirstOrDefault(f => f.Format.Recognises(start)) ?? throw Unknown(path, catalogue);
     }
 
+    /// <summary>True for a file that begins as one of a known format does; and for one that cannot be read, which is not for a search to hide.</summary>
+    public static bool IsStack(string path, PluginCatalogue catalogue)
+    {
+        try
+        {
+            byte[] start = Start(path);
+            return start.Length > 0 && catalogue.Formats.Any(f => f.Format.Recognises(start));
+        }
+        catch (StackIOException)
+        {
+            return true;
+        }
+    }
+
     private static byte[] Start(string path)
     {
         try

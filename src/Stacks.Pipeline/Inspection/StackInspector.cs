@@ -9,11 +9,14 @@ public static class StackInspector
     /// <summary>Most frames that are decoded; of longer stacks, this many at even distances, the first and last among them.</summary>
     public const int MostFrames = 16;
 
-    /// <summary>Opens, decodes and checks a stack. A truncated one is opened as far as it goes.</summary>
+    /// <summary>Opens, decodes and checks a stack: a file, or all files of a folder or a pattern as one. A truncated one is opened as far as it goes.</summary>
     /// <exception cref="StacksException">There is no such file, or it cannot be read as a stack at all.</exception>
-    public static StackInspection Inspect(string path, PluginCatalogue catalogue, CancellationToken cancellation)
+    public static StackInspection Inspect(InputSet input, PluginCatalogue catalogue, CancellationToken cancellation)
     {
-        using IStackReader reader = FormatFinder.Of(path, catalogue).Format.Open(path, new ReadOptions { AllowTruncated = true });
+        ReadOptions options = new() { AllowTruncated = true };
+        using IStackReader reader = input.IsSeries
+            ? new StackSeries(input.Name, input.Files, catalogue, options)
+            : FormatFinder.Of(input.Name, catalogue).Format.Open(input.Name, options);
         List<HealthFinding> health = [.. reader.CheckHealth(cancellation)];
         List<FrameFigures> figures = [];
         FrameSlot slot = new();
@@ -32,9 +35,9 @@ public static class StackInspector
 
         return new StackInspection
         {
-            Path = path,
+            Path = input.Name,
             Format = reader.Format.Id,
-            FileBytes = new FileInfo(path).Length,
+            FileBytes = input.Files.Sum(file => new FileInfo(file).Length),
             FrameCount = reader.FrameCount,
             Layouts = [.. Enumerable.Range(0, reader.FrameCount)
                 .CountBy(f => reader.Layout(f) with { Z = null, Time = null, Extension = null }).Select(g => (g.Key, g.Value))],

@@ -9,11 +9,17 @@ namespace Stacks.Pipeline;
 /// </summary>
 internal static class OutputFiles
 {
+    /// <summary>Ending of the provenance beside an output.</summary>
+    public const string SidecarEnding = ".prov.json";
+
+    /// <summary>Ending of a file that is not complete.</summary>
+    public const string PartialEnding = ".partial";
+
     /// <summary>Path of the sidecar of a stack.</summary>
-    public static string SidecarOf(string path) => path + ".prov.json";
+    public static string SidecarOf(string path) => path + SidecarEnding;
 
     /// <summary>Path under which a file is written until it is complete.</summary>
-    public static string PartialOf(string path) => path + ".partial";
+    public static string PartialOf(string path) => path + PartialEnding;
 
     /// <summary>
     /// True when the output is there and is what this work makes; false when nothing is in the way (or it may be
@@ -43,7 +49,7 @@ internal static class OutputFiles
     public static void RefuseOthers(RunPlan plan, IEnumerable<string> paths)
     {
         if (!plan.Overwrite && paths.FirstOrDefault(File.Exists) is { } there)
-            throw InTheWay(there, there.EndsWith(".partial", StringComparison.Ordinal) ? "is left from a run that did not end" : "exists already");
+            throw InTheWay(there, there.EndsWith(PartialEnding, StringComparison.Ordinal) ? "is left from a run that did not end" : "exists already");
     }
 
     /// <summary>Syncs the partial files, renames them, and syncs their folder.</summary>
