@@ -1,3 +1,5 @@
+using Stacks.Abstractions;
+
 namespace Stacks.Formats.Tiff;
 
 /// <summary>One TiffData element.</summary>
@@ -7,7 +9,17 @@ namespace Stacks.Formats.Tiff;
 /// <param name="Z">Place along z of the first plane.</param>
 /// <param name="T">Time of the first plane.</param>
 /// <param name="OtherFile">Name (or UUID) of the file the planes stand in; null for this one.</param>
-internal readonly record struct OmeTiffData(int Ifd, int? Planes, int C, int Z, int T, string? OtherFile);
+internal readonly record struct OmeTiffData(int Ifd, int? Planes, int C, int Z, int T, string? OtherFile)
+{
+    /// <summary>UUID of the other file; null where the element has none.</summary>
+    public string? OtherUuid { get; init; }
+
+    /// <summary>Where the element stands, from its first to its last bracket.</summary>
+    public TextSpan At { get; init; }
+
+    /// <summary>Its name with the prefix of its namespace.</summary>
+    public string Name { get; init; } = "TiffData";
+}
 
 /// <summary>An Image element with its Pixels.</summary>
 internal sealed class OmeImage
@@ -78,20 +90,68 @@ internal static class OmePlanes
 
     private static void Assign(OmeImage image, OmeTiffData data, OmePlane?[] planes, ref long budget)
     {
+        foreach ((int page, OmePlane plane) in Of(image, data, planes.Length))
+        {
+            if (budget-- <= 0)
+                return;
+            planes[page] = plane;
+        }
+    }
+
+    /// <summary>The pages that an element covers in a file of so many, with their places.</summary>
+    public static IEnumerable<(int Page, OmePlane Plane)> Of(OmeImage image, OmeTiffData data, int pages)
+    {
         (long fast, long middle, long slow) = InOrder(image, image.Size);
         (long f, long m, long s) = InOrder(image, (data.C, data.Z, data.T));
         Int128 total = (Int128)fast * middle * slow;
         Int128 first = f + ((Int128)fast * (m + ((Int128)middle * s)));
         int wanted = data.Planes ?? int.MaxValue;
-        for (int i = 0; i < wanted && first + i < total && data.Ifd + (long)i < planes.Length && budget > 0; i++, budget--)
+        for (int i = 0; i < wanted && first + i < total && data.Ifd + (long)i < pages; i++)
         {
             Int128 place = first + i;
             (int C, int Z, int T) at = default;
             Set(ref at, image.DimensionOrder[2], (int)(place % fast));
             Set(ref at, image.DimensionOrder[3], (int)(place / fast % middle));
             Set(ref at, image.DimensionOrder[4], (int)(place / fast / middle));
-            planes[data.Ifd + i] = new OmePlane(image, at.C, at.Z, at.T);
+            yield return (data.Ifd + i, new OmePlane(image, at.C, at.Z, at.T));
         }
+    }
+
+    /// <summary>The number of a plane in its image, in DimensionOrder.</summary>
+    public static Int128 Number(OmePlane plane)
+    {
+        (long fast, long middle, _) = InOrder(plane.Image, plane.Image.Size);
+        (long f, long m, long s) = InOrder(plane.Image, (plane.C, plane.Z, plane.T));
+        return f + ((Int128)fast * (m + ((Int128)middle * s)));
+    }
+
+    /// <summary>The layout of a sample's plane with its place in the image; samples of a pixel are channels that follow each other.</summary>
+    /// <param name="layout">The page's own layout.</param>
+    /// <param name="plane">The page's place.</param>
+    /// <param name="sample">Number of the sample in its pixel.</param>
+    /// <param name="isNamed">True to name the image, where there are several.</param>
+    public static FrameLayout Place(FrameLayout layout, OmePlane plane, int sample, bool isNamed)
+    {
+        OmeImage image = plane.Image;
+        int channel = plane.C + sample;
+        return layout with
+        {
+            Channel = channel,
+            ChannelName = channel < image.ChannelNames.Count ? image.ChannelNames[channel] : null,
+            Z = plane.Z,
+            Time = plane.T,
+            Extension = isNamed ? image.Name : null,
+            SaturationStored = Saturation(layout.SampleType, image.SignificantBits),
+        };
+    }
+
+    /// <summary>Saturation is the largest number that fits: 2^bits - 1, one bit less in signed types.</summary>
+    private static double? Saturation(SampleType type, int? significantBits)
+    {
+        if (!type.IsInteger())
+            return null;
+        bool signed = type.Minimum() < 0;
+        return significantBits is { } bits && bits >= 1 && bits < 8 * type.Size() ? Math.Pow(2, signed ? bits - 1 : bits) - 1 : type.Maximum();
     }
 
     private static void Set(ref (int C, int Z, int T) place, char axis, int index)

@@ -1,3 +1,4 @@
+using System.Globalization;
 using System.Security.Cryptography;
 using System.Text;
 using System.Xml.Linq;
@@ -13,11 +14,12 @@ internal static class OmeResult
 {
     /// <summary>Makes the text.</summary>
     /// <param name="ome">The source's OME-XML.</param>
+    /// <param name="set">The planes of a set of several files, which are now pages of this one, in order; null for a source of one file.</param>
     /// <param name="newTypes">New sample types of the images where they change.</param>
     /// <param name="fileName">Name of the result.</param>
     /// <param name="provenance">Provenance.</param>
     /// <param name="ledger">A row per frame.</param>
-    public static string Text(OmeXml ome, Dictionary<OmeImage, SampleType> newTypes, string fileName, ProvenanceRecord provenance, IReadOnlyList<LedgerRow> ledger)
+    public static string Text(OmeXml ome, IReadOnlyList<OmeSetPlane>? set, Dictionary<OmeImage, SampleType> newTypes, string fileName, ProvenanceRecord provenance, IReadOnlyList<LedgerRow> ledger)
     {
         List<(TextSpan, string)> edits = [];
         foreach ((OmeImage image, SampleType type) in newTypes)
@@ -28,7 +30,13 @@ internal static class OmeResult
                 edits.Add((bitsAt, $"{8 * type.Size()}"));
         }
 
-        if (ome.UuidsAt.Count > 0)
+        if (set is not null)
+        {
+            if (ome.RootUuidAt is { } rootAt)
+                edits.Add((rootAt, Uuid(ome.Uuid, provenance.WorkDigest)));
+            edits.AddRange(ome.Images.SelectMany(i => i.TiffData).Select(data => (data.At, TiffData(data, set))));
+        }
+        else if (ome.UuidsAt.Count > 0)
         {
             string uuid = Uuid(ome.Uuid, provenance.WorkDigest);
             edits.AddRange(ome.UuidsAt.Select(at => (at, uuid)));
@@ -39,6 +47,27 @@ internal static class OmeResult
             edits.Add((encoding, "UTF-8"));
         edits.Add(Annotation(ome, provenance, ledger));
         return ome.Xml.With(edits);
+    }
+
+    /// <summary>
+    /// The element of planes that are now pages of this file: without a file, which means this one. Planes of one element
+    /// follow each other in DimensionOrder, and so do the pages; of one whose planes are lost nothing is left.
+    /// </summary>
+    private static string TiffData(OmeTiffData data, IReadOnlyList<OmeSetPlane> set)
+    {
+        int first = -1, count = 0;
+        for (int f = 0; f < set.Count; f++)
+        {
+            if (set[f].Data.At != data.At)
+                continue;
+            first = first < 0 ? f : first;
+            count++;
+        }
+
+        if (count == 0)
+            return "";
+        OmePlane plane = set[first].Plane;
+        return string.Create(CultureInfo.InvariantCulture, $"<{data.Name} FirstC=\"{plane.C}\" FirstT=\"{plane.T}\" FirstZ=\"{plane.Z}\" IFD=\"{first}\" PlaneCount=\"{count}\"/>");
     }
 
     /// <summary>OME's name of a sample type; it has none for 64-bit integers and 16-bit floats, which keep ours.</summary>

@@ -1,5 +1,6 @@
 using System.Globalization;
 using System.Xml;
+using Stacks.Abstractions;
 
 namespace Stacks.Formats.Tiff;
 
@@ -31,6 +32,9 @@ internal sealed class OmeXml
 
     /// <summary>UUID of this file; null where it has none.</summary>
     public string? Uuid { get; private set; }
+
+    /// <summary>Where the UUID stands in the root; null where it has none.</summary>
+    public TextSpan? RootUuidAt { get; private set; }
 
     /// <summary>Where this file's UUID stands.</summary>
     public List<TextSpan> UuidsAt { get; } = [];
@@ -75,6 +79,23 @@ internal sealed class OmeXml
         }
     }
 
+    /// <summary>Header facts for people, in a fixed order.</summary>
+    public IEnumerable<HeaderFact> Facts()
+    {
+        foreach (OmeImage image in Images)
+        {
+            yield return new("OME image", string.Create(CultureInfo.InvariantCulture, $"{image.Name}: {image.Size.C} channels, {image.Size.Z} along z, {image.Size.T} times"));
+            if (image.AcquisitionDate is { } date)
+                yield return new("taken", date);
+            foreach ((string label, string value) in image.Scales)
+                yield return new(label, value);
+            if (image.SignificantBits is { } bits)
+                yield return new("significant bits", string.Create(CultureInfo.InvariantCulture, $"{bits}"));
+            for (int c = 0; c < image.ChannelNames.Count; c++)
+                yield return new(string.Create(CultureInfo.InvariantCulture, $"channel {c}"), image.ChannelNames[c] ?? "without a name");
+        }
+    }
+
     private bool Scan()
     {
         using XmlReader reader = XmlReader.Create(new StringReader(xml.Text), XmlText.Settings);
@@ -96,6 +117,9 @@ internal sealed class OmeXml
                 case XmlNodeType.EndElement when reader.Depth <= 1:
                     EndElement(reader, xml.At(lines));
                     break;
+                case XmlNodeType.EndElement when reader.Depth == 3 && path is ["OME", "Image", "Pixels", "TiffData", ..]:
+                    EndTiffData(xml.AfterTag(xml.At(lines)));
+                    break;
                 case XmlNodeType.Text when reader.Depth <= Deepest:
                     TextNode(reader, string.Join('/', path.Take(reader.Depth)), xml.At(lines));
                     break;
@@ -112,7 +136,8 @@ internal sealed class OmeXml
             case "OME":
                 Namespace = reader.NamespaceURI;
                 Uuid = reader.GetAttribute("UUID")?.Trim();
-                if (Place(reader, "UUID") is { } uuidAt)
+                RootUuidAt = Place(reader, "UUID");
+                if (RootUuidAt is { } uuidAt)
                     UuidsAt.Add(uuidAt);
                 break;
             case "OME/BinaryOnly":
@@ -136,7 +161,11 @@ internal sealed class OmeXml
             case "OME/Image/Pixels/TiffData":
                 int? planes = Whole(reader, "PlaneCount") ?? Whole(reader, "NumPlanes") ?? (reader.GetAttribute("IFD") is null ? null : 1);
                 Images[^1].TiffData.Add(new OmeTiffData(
-                    Whole(reader, "IFD") ?? 0, planes, Whole(reader, "FirstC") ?? 0, Whole(reader, "FirstZ") ?? 0, Whole(reader, "FirstT") ?? 0, null));
+                    Whole(reader, "IFD") ?? 0, planes, Whole(reader, "FirstC") ?? 0, Whole(reader, "FirstZ") ?? 0, Whole(reader, "FirstT") ?? 0, null)
+                {
+                    At = new TextSpan(tagAt - 1, xml.AfterTag(tagAt) - tagAt + 1),
+                    Name = reader.Name,
+                });
                 break;
             case "OME/Image/Pixels/TiffData/UUID":
                 pendingUuidFile = reader.GetAttribute("FileName");
@@ -153,6 +182,12 @@ internal sealed class OmeXml
             AfterImages = xml.AfterTag(nameAt);
         if (reader.Depth == 1 && reader.LocalName == "StructuredAnnotations")
             AnnotationsEnd = nameAt - 2;
+    }
+
+    private void EndTiffData(int end)
+    {
+        List<OmeTiffData> data = Images[^1].TiffData;
+        data[^1] = data[^1] with { At = data[^1].At with { Length = end - data[^1].At.Start } };
     }
 
     private void TextNode(XmlReader reader, string path, int at)
@@ -175,7 +210,7 @@ internal sealed class OmeXml
         else
         {
             List<OmeTiffData> data = Images[^1].TiffData;
-            data[^1] = data[^1] with { OtherFile = pendingUuidFile ?? uuid };
+            data[^1] = data[^1] with { OtherFile = pendingUuidFile ?? uuid, OtherUuid = uuid };
         }
     }
 

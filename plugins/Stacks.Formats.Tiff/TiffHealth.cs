@@ -20,15 +20,22 @@ internal static class TiffHealth
         TiffMetadata metadata = reader.Metadata;
         if (metadata.OmeProblem is { } problem)
             yield return new HealthFinding(true, problem);
-        if (metadata.Ome is { } ome)
+        if (metadata.Ome is not null)
         {
-            foreach (HealthFinding finding in CheckOme(reader, ome))
+            foreach (HealthFinding finding in CheckOme(reader))
                 yield return finding;
         }
 
         if (metadata.Xmp is { } packet && XmpPacket.Read(packet) is null)
             yield return new HealthFinding(true, "the XMP packet of page 0 is not well-formed: a result carries it in base64 inside its own packet");
 
+        foreach (HealthFinding finding in CheckPages(reader, cancellation))
+            yield return finding;
+    }
+
+    /// <summary>Decodes every compressed page.</summary>
+    public static IEnumerable<HealthFinding> CheckPages(TiffReader reader, CancellationToken cancellation)
+    {
         ByteBuffer raw = new();
         ByteBuffer stored = new();
         int compressed = 0;
@@ -49,15 +56,10 @@ internal static class TiffHealth
             yield return new HealthFinding(false, string.Create(CultureInfo.InvariantCulture, $"all {compressed} compressed pages decode"));
     }
 
-    private static IEnumerable<HealthFinding> CheckOme(TiffReader reader, OmeXml ome)
+    private static IEnumerable<HealthFinding> CheckOme(TiffReader reader)
     {
-        string folder = Path.GetDirectoryName(Path.GetFullPath(reader.Path)) ?? "";
-        foreach (string name in TiffParts.OtherFiles(ome).Take(Named))
-        {
-            string state = File.Exists(Path.Combine(folder, Path.GetFileName(name))) ? "is there but is not read" : "is missing";
-            yield return new HealthFinding(true, $"the OME set goes on in {name}, which {state}: only the planes of this file are taken");
-        }
-
+        if (reader.Metadata.Ome!.MetadataFile is { } companion)
+            yield return new HealthFinding(true, $"the OME-XML stands in {companion}, which is not beside the file: pages are taken without channel, z and time");
         if (reader.Metadata.Planes is not { } planes)
             yield break;
         int strangers = planes.Count(p => p is null);

@@ -40,17 +40,7 @@ internal sealed class TiffMetadata
         FrameLayout layout = pageLayout.FrameOf(sample);
         if (Planes?[page] is not { } plane)
             return layout;
-        OmeImage image = plane.Image;
-        int channel = plane.C + sample;
-        return layout with
-        {
-            Channel = channel,
-            ChannelName = channel < image.ChannelNames.Count ? image.ChannelNames[channel] : null,
-            Z = plane.Z,
-            Time = plane.T,
-            Extension = Ome!.Images.Count > 1 ? image.Name : null,
-            SaturationStored = Saturation(layout.SampleType, image.SignificantBits),
-        };
+        return OmePlanes.Place(layout, plane, sample, Ome!.Images.Count > 1);
     }
 
     /// <summary>Header facts for people, in a fixed order.</summary>
@@ -74,18 +64,7 @@ internal sealed class TiffMetadata
 
         if (Resolution() is { } resolution)
             facts.Add(new("resolution", resolution));
-        foreach (OmeImage image in Ome?.Images ?? [])
-        {
-            facts.Add(new("OME image", string.Create(CultureInfo.InvariantCulture, $"{image.Name}: {image.Size.C} channels, {image.Size.Z} along z, {image.Size.T} times")));
-            if (image.AcquisitionDate is { } date)
-                facts.Add(new("taken", date));
-            facts.AddRange(image.Scales.Select(s => new HeaderFact(s.Label, s.Value)));
-            if (image.SignificantBits is { } bits)
-                facts.Add(new("significant bits", string.Create(CultureInfo.InvariantCulture, $"{bits}")));
-            for (int c = 0; c < image.ChannelNames.Count; c++)
-                facts.Add(new(string.Create(CultureInfo.InvariantCulture, $"channel {c}"), image.ChannelNames[c] ?? "without a name"));
-        }
-
+        facts.AddRange(Ome?.Facts() ?? []);
         return facts;
     }
 
@@ -99,15 +78,6 @@ internal sealed class TiffMetadata
         byte[] bytes = new byte[field.ByteLength];
         file.Read(field.ValueAt, bytes);
         return bytes;
-    }
-
-    /// <summary>Saturation is the largest number that fits: 2^bits - 1, one bit less in signed types.</summary>
-    private static double? Saturation(SampleType type, int? significantBits)
-    {
-        if (!type.IsInteger())
-            return null;
-        bool signed = type.Minimum() < 0;
-        return significantBits is { } bits && bits >= 1 && bits < 8 * type.Size() ? Math.Pow(2, signed ? bits - 1 : bits) - 1 : type.Maximum();
     }
 
     private string? Resolution()

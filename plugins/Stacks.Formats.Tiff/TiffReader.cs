@@ -53,8 +53,29 @@ internal sealed class TiffReader : IStackReader
     /// <summary>What the first page says about the whole file.</summary>
     internal TiffMetadata Metadata { get; }
 
+    /// <summary>What TIFF says of a frame's noise.</summary>
+    internal static HeaderNoise NoNoise { get; } = new(null, null, null, "TIFF has no fields for gain, read noise or pedestal", null);
+
+    /// <summary>Opens a file, and with it the other files of its OME set where its OME-XML names some.</summary>
+    public static IStackReader Open(TiffFormat format, string path, ReadOptions options)
+    {
+        TiffReader reader = OpenAlone(format, path, options);
+        try
+        {
+            if (OmeSet.Of(reader, options) is not { } set)
+                return reader;
+            reader.Dispose();
+            return new OmeSetReader(format, set, options);
+        }
+        catch
+        {
+            reader.Dispose();
+            throw;
+        }
+    }
+
     /// <summary>Opens a file and walks over its pages.</summary>
-    public static TiffReader Open(TiffFormat format, string path, ReadOptions options)
+    public static TiffReader OpenAlone(TiffFormat format, string path, ReadOptions options)
     {
         TiffFile file = TiffFile.Open(path, options.AllowTruncated);
         try
@@ -74,7 +95,7 @@ internal sealed class TiffReader : IStackReader
     public FrameLayout Layout(int frame) => Metadata.Layout(PageOf(frame).Layout, frames[frame].Page, frames[frame].Sample);
 
     /// <inheritdoc/>
-    public HeaderNoise NoiseOf(int frame) => new(null, null, null, "TIFF has no fields for gain, read noise or pedestal", null);
+    public HeaderNoise NoiseOf(int frame) => NoNoise;
 
     /// <inheritdoc/>
     public IEnumerable<HealthFinding> CheckHealth(CancellationToken cancellation) => TiffHealth.Check(this, cancellation);
@@ -132,6 +153,12 @@ internal sealed class TiffReader : IStackReader
 
     /// <inheritdoc/>
     public void Dispose() => File.Dispose();
+
+    /// <summary>A frame's layout by its page alone, without a place in an OME image.</summary>
+    internal FrameLayout OwnLayout(int frame) => PageOf(frame).Layout.FrameOf(frames[frame].Sample);
+
+    /// <summary>The first frame of a page; negative where it holds none.</summary>
+    internal int FrameOfPage(int page) => Array.BinarySearch(frames, (page, 0));
 
     /// <summary>Number of the page a frame stands in.</summary>
     internal int PageNumber(int frame) => frames[frame].Page;

@@ -14,6 +14,7 @@ internal sealed class TiffWriter : IStackWriter
     private const int Named = 20;
     private readonly WriteRequest request;
     private readonly TiffReader? source;
+    private readonly OmeSetReader? set;
     private readonly Dictionary<OmeImage, SampleType> newOmeTypes = [];
     private readonly PageFile stack;
     private readonly PageFile? mask;
@@ -24,6 +25,7 @@ internal sealed class TiffWriter : IStackWriter
     {
         this.request = request;
         source = request.Source as TiffReader;
+        set = request.Source as OmeSetReader;
         CheckMeaning();
         CheckSamplesOfPixels();
         FindNewOmeTypes();
@@ -35,8 +37,8 @@ internal sealed class TiffWriter : IStackWriter
         }
 
         Files = files;
-        bool bigEndian = source is { File.BigEndian: true };
-        IsBig = source is { File.IsBig: true } || MayPass4GiB(TypeOf);
+        bool bigEndian = source is { File.BigEndian: true } || set is { Set.BigEndian: true };
+        IsBig = source is { File.IsBig: true } || set is { Set.IsBig: true } || MayPass4GiB(TypeOf);
         stack = new PageFile(files[0].Partial, bigEndian, IsBig, request.Compression switch
         {
             OutputCompression.None => Compression.None,
@@ -92,7 +94,7 @@ internal sealed class TiffWriter : IStackWriter
             throw new InvalidOperationException($"{stack.Frames} of {frames} frames were written");
         List<OutputField> first = FirstPage(provenance with { Remarks = [.. provenance.Remarks, .. NotCarried()] }, ledger);
         if (source is null)
-            WritePlainPages(first);
+            WritePlainPages(first, ledger);
         else
             WritePagesOfSource(source, first, ledger);
         stack.Finish();
@@ -118,9 +120,9 @@ internal sealed class TiffWriter : IStackWriter
             DirectoryWriter.Text(Tag.Software, $"{provenance.Program} {provenance.Version}"),
             DirectoryWriter.Text(Tag.DateTime, request.Created.UtcDateTime.ToString("yyyy:MM:dd HH:mm:ss", CultureInfo.InvariantCulture)),
         ];
-        if (source?.Metadata.Ome is { MetadataFile: null } ome)
+        if ((set?.Set.Ome ?? source?.Metadata.Ome) is { MetadataFile: null } ome)
         {
-            string text = OmeResult.Text(ome, newOmeTypes, System.IO.Path.GetFileName(request.Path), provenance, ledger);
+            string text = OmeResult.Text(ome, set?.Set.Planes, newOmeTypes, System.IO.Path.GetFileName(request.Path), provenance, ledger);
             first.Add(DirectoryWriter.Text(Tag.ImageDescription, text));
         }
         else
@@ -138,7 +140,7 @@ internal sealed class TiffWriter : IStackWriter
         List<string> parts =
         [
             .. request.Source.Parts
-                .Where(p => source is null ? p.Role is not ("science" or "empty") : p.Fate == "not carried" || (!request.Carry && p.Role == "thumbnail"))
+                .Where(p => source is null && set is null ? p.Role is not ("science" or "empty") : p.Fate == "not carried" || (!request.Carry && p.Role == "thumbnail"))
                 .Select(p => $"not carried: {p.Name} of the source ({p.Role}, {p.Shape})"),
         ];
         return parts.Count <= Named
@@ -146,13 +148,20 @@ internal sealed class TiffWriter : IStackWriter
             : parts.Take(Named).Append(string.Create(CultureInfo.InvariantCulture, $"not carried: {parts.Count - Named} more parts of the source"));
     }
 
-    private void WritePlainPages(List<OutputField> first)
+    /// <summary>A page for each frame; of a set of files, with the fields that the frame's own page carries.</summary>
+    private void WritePlainPages(List<OutputField> first, IReadOnlyList<LedgerRow> ledger)
     {
         int frames = request.Source.FrameCount;
         for (int f = 0; f < frames; f++)
         {
-            IEnumerable<OutputField> fields = stack.ImageFields(f, request.Source.Layout(f), TypeOf(f)).Append(stack.BlackIsZero);
-            stack.WriteDirectory(f == 0 ? fields.Concat(first) : fields, f == frames - 1);
+            FrameLayout layout = request.Source.Layout(f);
+            bool typeChanged = TypeOf(f) != layout.SampleType;
+            bool changed = typeChanged || !ledger[f].SourceDigest.AsSpan().SequenceEqual(ledger[f].ResultDigest);
+            IEnumerable<OutputField> carried = set?.CarriedFieldsOf(f, typeChanged, changed) ?? [];
+
+            // The text of the set goes into the first page; the links of the others to it no longer hold.
+            IEnumerable<OutputField> fields = stack.ImageFields(f, layout, TypeOf(f)).Concat(carried.Where(c => c.Tag != Tag.ImageDescription)).Append(stack.BlackIsZero);
+            stack.WriteDirectory(f == 0 ? first.Concat(fields) : fields, f == frames - 1);
         }
     }
 
@@ -216,6 +225,8 @@ internal sealed class TiffWriter : IStackWriter
         long bound = 1 << 20;
         if (source is not null)
             bound += (2 * (source.File.Length - Math.Min(source.File.Length, source.Index.ImageBytes))) + source.Index.ThumbnailBytes;
+        if (set is not null)
+            bound += 2 * (set.Set.OtherBytes + set.Set.Ome.Xml.Text.Length);
         for (int f = 0; f < request.Source.FrameCount; f++)
         {
             FrameLayout layout = request.Source.Layout(f);
@@ -257,9 +268,9 @@ internal sealed class TiffWriter : IStackWriter
     private void FindNewOmeTypes()
     {
         Dictionary<OmeImage, SampleType> types = [];
-        for (int f = 0; source?.Metadata.Planes is { } planes && f < source.FrameCount; f++)
+        for (int f = 0; f < request.Source.FrameCount; f++)
         {
-            if (planes[source.PageNumber(f)] is not { } plane)
+            if ((set is null ? source?.Metadata.Planes?[source.PageNumber(f)] : set.Set.Planes[f].Plane) is not { } plane)
                 continue;
             SampleType type = TypeOf(f);
             if (!types.TryAdd(plane.Image, type) && types[plane.Image] != type)
@@ -270,7 +281,7 @@ internal sealed class TiffWriter : IStackWriter
                     "ask for samples = \"same\" or \"float32\" in the recipe's [output]");
             }
 
-            if (type != source.Layout(f).SampleType)
+            if (type != request.Source.Layout(f).SampleType)
                 newOmeTypes[plane.Image] = type;
         }
     }

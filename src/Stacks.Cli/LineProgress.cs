@@ -41,7 +41,7 @@ internal sealed class LineProgress(int count, bool verbose) : FaultLines(verbose
         base.StackEnds(entry);
         if (entry.Result is { Outcome: RunOutcome.Made } result)
             Console.Error.WriteLine($"{label}: done in {Rate.Clock(entry.Elapsed)}, {rate!.Speed(result.Provenance?.Totals.Frames ?? 0)}");
-        else if (entry.Result is not null)
+        else if (entry.Result is { Outcome: not RunOutcome.PartOfAnother })
             Console.Error.WriteLine($"{label}: done before, left as it is");
     }
 }

@@ -10,7 +10,9 @@ internal static class RunReport
     /// <summary>For people. A single stack that failed has had its line on stderr, and gets no report.</summary>
     public static void WriteText(IReadOnlyList<NightEntry> entries)
     {
-        foreach (NightEntry entry in entries.Where(e => e.Result is not null))
+        foreach (NightEntry entry in entries.Where(e => e.Result is { Outcome: RunOutcome.PartOfAnother }))
+            Console.WriteLine($"{entry.Item.Input}: {entry.Result!.Warnings[0]}");
+        foreach (NightEntry entry in entries.Where(e => e is { Plan: not null, Result: not null }))
             WriteText(entry, entry.Plan!, entry.Result!);
         if (entries.Count > 1)
             WriteSummary(entries);
@@ -31,7 +33,7 @@ internal static class RunReport
             Output = e.Item.Output.Length > 0 ? e.Item.Output : null,
             e.ExitCode,
             Error = e.Fault is null ? null : ErrorLine.Text(e.Fault),
-            Outcome = e.Result?.Outcome switch { RunOutcome.Made => "made", RunOutcome.AlreadyDone => "done_before", _ => "failed" },
+            Outcome = e.Result?.Outcome switch { RunOutcome.Made => "made", RunOutcome.AlreadyDone => "done_before", RunOutcome.PartOfAnother => "part_of_another", _ => "failed" },
             Seconds = e.Elapsed.TotalSeconds,
             Files = e.Result?.Files,
             Warnings = e.Result?.Warnings,
@@ -99,8 +101,9 @@ internal static class RunReport
     {
         int made = entries.Count(e => e.Result is { Outcome: RunOutcome.Made });
         int before = entries.Count(e => e.Result is { Outcome: RunOutcome.AlreadyDone });
+        int parts = entries.Count(e => e.Result is { Outcome: RunOutcome.PartOfAnother });
         NightEntry[] failed = [.. entries.Where(e => e.Fault is not null)];
-        Console.WriteLine($"{Describe.Count(entries.Count, "stack")}: {made} made, {before} done before, {failed.Length} failed");
+        Console.WriteLine($"{Describe.Count(entries.Count - parts, "stack")}: {made} made, {before} done before, {failed.Length} failed" + (parts > 0 ? $", {Describe.Count(parts, "file")} of another's stack" : ""));
         foreach (NightEntry entry in failed)
         {
             string text = ErrorLine.Text(entry.Fault!);

@@ -27,7 +27,7 @@ internal sealed class TerminalProgress(IAnsiConsole console, ProgressContext con
         task = null;
         if (entry.Fault is not null)
             console.WriteLine("stacks: " + ErrorLine.Text(entry.Fault) + (verbose ? $"\n{entry.Fault}" : ""));
-        else if (entry.Result is not null)
+        else if (entry.Result is { Outcome: not RunOutcome.PartOfAnother })
             console.WriteLine($"{Path.GetFileName(entry.Item.Input)}: {(entry.Result.Outcome == RunOutcome.Made ? "done in " + Rate.Clock(entry.Elapsed) : "done before")}");
     }
 }

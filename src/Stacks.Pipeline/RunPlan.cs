@@ -135,6 +135,9 @@ public enum RunOutcome
 
     /// <summary>The output was there already and matches input, recipe and plugins.</summary>
     AlreadyDone,
+
+    /// <summary>The input is a file of an earlier input's stack, and its frames are in that one's output.</summary>
+    PartOfAnother,
 }
 
 /// <summary>The result of one stack's run.</summary>

@@ -29,9 +29,14 @@ public static class NightRun
         if (run is not null)
             CreateFolders(items);
         List<NightEntry> entries = [];
+        Dictionary<string, string> coveredBy = [];
         for (int i = 0; i < items.Count; i++)
         {
-            NightEntry entry = One(items[i], i, items.Count, planner, run, progress, cancellation);
+            NightEntry entry = coveredBy.TryGetValue(RealPath.Of(items[i].Input), out string? other)
+                ? new NightEntry(items[i], null, new RunResult(RunOutcome.PartOfAnother, null, [], [$"a file of the stack of {other}"]), null, TimeSpan.Zero)
+                : One(items[i], i, items.Count, planner, run, progress, cancellation);
+            foreach (string file in entry.Plan?.Reader.OtherFiles ?? [])
+                coveredBy.TryAdd(RealPath.Of(file), items[i].Input);
             progress.StackEnds(entry);
             entries.Add(entry);
         }

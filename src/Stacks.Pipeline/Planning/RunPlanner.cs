@@ -75,6 +75,8 @@ public sealed class RunPlanner
 
     private RunPlan Complete(RunPlan plan)
     {
+        if (plan.Reader.OtherFiles.FirstOrDefault(file => RealPath.Of(file) == RealPath.Of(plan.OutputPath)) is { } other)
+            throw new OutputException(plan.OutputPath, $"would overwrite {other}, a file of the input's stack", "give -o another name");
         if (plan.Reader.FrameCount == 0)
             throw new StackFormatException(plan.Reader.Path, "holds no science frame", "name its science extensions in [input] extensions, or another file");
         if (plan.OutputFormat.CannotCompress(recipe.Output.Compression) is { } fault)

@@ -39,11 +39,12 @@ internal static class Digests
     public static string OfText(string text) => Convert.ToHexStringLower(SHA256.HashData(Encoding.UTF8.GetBytes(text)));
 
     /// <summary>
-    /// Equal work has equal digests: over program version, source, recipe, plugins and mask images, one a line.
+    /// Equal work has equal digests: over program version, source, its other files, recipe, plugins and mask images, one a line.
     /// </summary>
-    public static string OfWork(RunPlan plan, string version, string sourceDigest, IReadOnlyList<NamedDigest> masks)
+    public static string OfWork(RunPlan plan, string version, string sourceDigest, IReadOnlyList<NamedDigest> others, IReadOnlyList<NamedDigest> masks)
     {
         List<string> lines = [$"version {version}", $"source {sourceDigest}", $"recipe {plan.RecipeDigest}"];
+        lines.AddRange(others.Select(o => $"source {o.Digest}"));
         lines.AddRange(plan.FormatOrigins.Select(o => $"format {o.Assembly} {o.Digest}"));
         lines.AddRange(plan.Steps.Select(s => $"filter {s.Section.Filter} {s.Filter.Origin.Digest}"));
         lines.AddRange(masks.Select(m => $"mask {m.Digest}"));

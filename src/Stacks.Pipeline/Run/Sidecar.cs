@@ -48,11 +48,12 @@ internal static class Sidecar
     /// <param name="path">Path to write.</param>
     /// <param name="record">Who did what.</param>
     /// <param name="plan">The plan, for file names and plugins.</param>
+    /// <param name="others">The source's other files.</param>
     /// <param name="masks">Mask and defect images read.</param>
     /// <param name="made">Files made, by final name, the stack first.</param>
     /// <exception cref="StackIOException">The file cannot be written.</exception>
     public static void Write(
-        string path, ProvenanceRecord record, RunPlan plan, IReadOnlyList<NamedDigest> masks, IReadOnlyList<NamedDigest> made)
+        string path, ProvenanceRecord record, RunPlan plan, IReadOnlyList<NamedDigest> others, IReadOnlyList<NamedDigest> masks, IReadOnlyList<NamedDigest> made)
     {
         string created = record.Created.UtcDateTime.ToString("yyyy-MM-dd'T'HH:mm:ss'Z'", CultureInfo.InvariantCulture);
         JsonObject entities = new()
@@ -61,6 +62,13 @@ internal static class Sidecar
             [Recipe] = RecipeEntity(record, plan),
         };
         List<string> used = ["stacks:source", Recipe];
+        for (int i = 0; i < others.Count; i++)
+        {
+            used.Add(Numbered("stacks:source", i + 1));
+            entities[used[^1]] = FileEntity(others[i].Name, others[i].Digest);
+        }
+
+        string[] sources = [.. used.Where(e => e != Recipe)];
         for (int i = 0; i < masks.Count; i++)
         {
             used.Add(Numbered("stacks:mask", i));
@@ -90,7 +98,7 @@ internal static class Sidecar
             ["wasAssociatedWith"] = Relations(
                 "a", agents.Select(a => new JsonObject { ["prov:activity"] = Run, ["prov:agent"] = a.Key, ["prov:plan"] = Recipe })),
             ["wasDerivedFrom"] = Relations(
-                "d", results.Select(e => new JsonObject { ["prov:generatedEntity"] = e, ["prov:usedEntity"] = "stacks:source" })),
+                "d", results.SelectMany(e => sources.Select(s => new JsonObject { ["prov:generatedEntity"] = e, ["prov:usedEntity"] = s }))),
         };
         try
         {

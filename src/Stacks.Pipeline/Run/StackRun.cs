@@ -23,15 +23,17 @@ public static class StackRun
     {
         using CancellationTokenSource ended = CancellationTokenSource.CreateLinkedTokenSource(cancellation);
         Task<string> sourceDigest = Task.Run(() => Digests.OfFile(plan.Reader.Path, ended.Token), ended.Token);
+        Task<NamedDigest[]> otherDigests = Task.Run(
+            () => plan.Reader.OtherFiles.Select(f => new NamedDigest(Path.GetFileName(f), Digests.OfFile(f, ended.Token))).ToArray(), ended.Token);
         Task<string[]> damage = Task.Run(
             () => plan.Reader.CheckHealth(ended.Token).Where(f => f.IsProblem).Select(f => $"the source is damaged: {f.Text}").ToArray(), ended.Token);
         try
         {
             FrameMasks masks = new(plan, cancellation);
-            string WorkDigest() => Digests.OfWork(plan, Software.Version, sourceDigest.GetAwaiter().GetResult(), masks.Files);
+            string WorkDigest() => Digests.OfWork(plan, Software.Version, sourceDigest.GetAwaiter().GetResult(), otherDigests.GetAwaiter().GetResult(), masks.Files);
             if (OutputFiles.IsDone(plan, WorkDigest, cancellation))
                 return new RunResult(RunOutcome.AlreadyDone, null, [plan.OutputPath], []);
-            return Make(plan, masks, sourceDigest, damage, WorkDigest, progress, sync, cancellation);
+            return Make(plan, masks, sourceDigest, otherDigests, damage, WorkDigest, progress, sync, cancellation);
         }
         finally
         {
@@ -43,6 +45,7 @@ public static class StackRun
         RunPlan plan,
         FrameMasks masks,
         Task<string> sourceDigest,
+        Task<NamedDigest[]> otherDigests,
         Task<string[]> damage,
         Func<string> workDigest,
         IProgress<RunProgress>? progress,
@@ -66,7 +69,7 @@ public static class StackRun
             }
 
             NamedDigest[] made = [.. written.Select(f => new NamedDigest(Path.GetFileName(f.Final), Digests.OfFile(f.Partial, cancellation)))];
-            Sidecar.Write(sidecar.Partial, account.Provenance, plan, masks.Files, made);
+            Sidecar.Write(sidecar.Partial, account.Provenance, plan, otherDigests.GetAwaiter().GetResult(), masks.Files, made);
             cancellation.ThrowIfCancellationRequested();
             OutputFiles.Commit([sidecar, .. written.Reverse()], plan.Overwrite, sync);
             OutputFiles.RemoveStale(Path.GetDirectoryName(Path.GetFullPath(plan.OutputPath))!, replaced, made);

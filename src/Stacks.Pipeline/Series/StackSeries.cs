@@ -12,47 +12,50 @@ public sealed class StackSeries : IStackReader
 {
     private const int MostOpen = 8;
     private const int MostNamed = 5;
-    private readonly IReadOnlyList<string> files;
-    private readonly PluginCatalogue catalogue;
-    private readonly ReadOptions options;
-    private readonly int[] firstFrame;
-    private readonly List<OpenFile> open = [];
-    private readonly Lock gate = new();
+    private readonly List<string> files = [];
+    private readonly List<int> firstFrame = [0];
+    private readonly ReaderPool readers;
 
-    /// <summary>Opens every file once, counts its frames and closes it.</summary>
+    /// <summary>Opens every file once, counts its frames and closes it. A file that belongs to the stack of an earlier one is passed over.</summary>
     /// <param name="name">Folder or pattern that named the files.</param>
-    /// <param name="files">One file or more, in order.</param>
+    /// <param name="paths">One file or more, in order.</param>
     /// <param name="catalogue">The formats.</param>
     /// <param name="options">How each file is opened.</param>
     /// <exception cref="StacksException">A file is missing or cannot be read as a stack.</exception>
-    public StackSeries(string name, IReadOnlyList<string> files, PluginCatalogue catalogue, ReadOptions options)
+    public StackSeries(string name, IReadOnlyList<string> paths, PluginCatalogue catalogue, ReadOptions options)
     {
         Path = name;
-        Format = FormatFinder.Of(files[0], catalogue).Format;
-        this.files = files;
-        this.catalogue = catalogue;
-        this.options = options;
-        firstFrame = new int[files.Count + 1];
-        List<string> unlike = [];
+        Format = FormatFinder.Of(paths[0], catalogue).Format;
+        IStackReader Open(string path) => FormatFinder.Of(path, catalogue).Format.Open(path, options);
+        readers = new ReaderPool(file => Open(files[file]), MostOpen);
+        HashSet<string> covered = [];
+        List<string> unlike = [], losses = [], others = [];
+        IReadOnlyList<HeaderFact> facts = [];
         FrameLayout? first = null;
-        for (int i = 0; i < files.Count; i++)
+        foreach (string path in paths.Where(p => !covered.Contains(RealPath.Of(p))))
         {
-            using IStackReader reader = Open(files[i]);
-            firstFrame[i + 1] = checked(firstFrame[i] + reader.FrameCount);
+            using IStackReader reader = Open(path);
+            covered.UnionWith(reader.OtherFiles.Select(RealPath.Of));
+            files.Add(path);
+            others.AddRange([path, .. reader.OtherFiles]);
+            firstFrame.Add(checked(firstFrame[^1] + reader.FrameCount));
+            losses.AddRange(reader.Losses.Select(loss => $"{path}: {loss}"));
             FrameLayout layout = reader.Layout(0);
-            first ??= layout;
+            if (first is null)
+                (first, facts) = (layout, reader.Facts);
             if ((layout.Width, layout.Height, layout.SampleType) != (first.Width, first.Height, first.SampleType))
-                unlike.Add($"{System.IO.Path.GetFileName(files[i])} ({layout.Width} x {layout.Height} {layout.SampleType.Name()})");
-            if (i == 0)
-                Facts = reader.Facts;
+                unlike.Add($"{System.IO.Path.GetFileName(path)} ({layout.Width} x {layout.Height} {layout.SampleType.Name()})");
         }
 
+        OtherFiles = [.. others.Skip(1)];
+        Losses = losses;
         Unlike = unlike;
+        string Last(string path) => System.IO.Path.GetFileName(path);
         Facts =
         [
-            new HeaderFact("files", string.Create(CultureInfo.InvariantCulture, $"{files.Count}, from {System.IO.Path.GetFileName(files[0])} to {System.IO.Path.GetFileName(files[^1])}")),
+            new HeaderFact("files", string.Create(CultureInfo.InvariantCulture, $"{files.Count}, from {Last(files[0])} to {Last(files[^1])}")),
             .. unlike.Count == 0 ? [] : new[] { new HeaderFact("unlike the first", string.Join("; ", unlike.Take(MostNamed)) + (unlike.Count > MostNamed ? $"; and {unlike.Count - MostNamed} more" : "")) },
-            .. Facts!,
+            .. facts,
         ];
     }
 
@@ -63,10 +66,10 @@ public sealed class StackSeries : IStackReader
     public IStackFormat Format { get; }
 
     /// <inheritdoc/>
-    public IReadOnlyList<string> OtherFiles => [.. files.Skip(1)];
+    public IReadOnlyList<string> OtherFiles { get; }
 
     /// <inheritdoc/>
-    public IReadOnlyList<string> Losses => [.. Enumerable.Range(0, files.Count).SelectMany(i => With(i, reader => reader.Losses.Select(loss => $"{files[i]}: {loss}").ToArray()))];
+    public IReadOnlyList<string> Losses { get; }
 
     /// <inheritdoc/>
     public int FrameCount => firstFrame[^1];
@@ -81,10 +84,18 @@ public sealed class StackSeries : IStackReader
     public IReadOnlyList<string> Unlike { get; }
 
     /// <inheritdoc/>
-    public FrameLayout Layout(int frame) => At(frame, (reader, own) => reader.Layout(own));
+    public FrameLayout Layout(int frame)
+    {
+        using ReaderPool.Lease file = Lend(frame, out int own);
+        return file.Reader.Layout(own);
+    }
 
     /// <inheritdoc/>
-    public HeaderNoise NoiseOf(int frame) => At(frame, (reader, own) => reader.NoiseOf(own));
+    public HeaderNoise NoiseOf(int frame)
+    {
+        using ReaderPool.Lease file = Lend(frame, out int own);
+        return file.Reader.NoiseOf(own);
+    }
 
     /// <inheritdoc/>
     public IEnumerable<HealthFinding> CheckHealth(CancellationToken cancellation)
@@ -92,110 +103,51 @@ public sealed class StackSeries : IStackReader
         int sound = 0;
         for (int i = 0; i < files.Count; i++)
         {
-            HealthFinding[] problems = With(i, reader => reader.CheckHealth(cancellation).Where(f => f.IsProblem).ToArray());
-            sound += problems.Length == 0 ? 1 : 0;
-            foreach (HealthFinding problem in problems)
+            using ReaderPool.Lease file = readers.Lend(i);
+            bool isSound = true;
+            foreach (HealthFinding problem in file.Reader.CheckHealth(cancellation).Where(f => f.IsProblem))
+            {
+                isSound = false;
                 yield return problem with { Text = $"{files[i]}: {problem.Text}" };
+            }
+
+            sound += isSound ? 1 : 0;
         }
 
         yield return new HealthFinding(false, string.Create(CultureInfo.InvariantCulture, $"{sound} of {files.Count} files without a fault"));
     }
 
     /// <inheritdoc/>
-    public void Read(int frame, ByteBuffer raw) => At(frame, (reader, own) =>
+    public void Read(int frame, ByteBuffer raw)
     {
-        reader.Read(own, raw);
-        return 0;
-    });
+        using ReaderPool.Lease file = Lend(frame, out int own);
+        file.Reader.Read(own, raw);
+    }
 
     /// <inheritdoc/>
     public void Decode(int frame, ReadOnlySpan<byte> raw, Span<byte> stored)
     {
-        int file = FileOf(frame);
-        OpenFile lent = Lend(file);
-        try
-        {
-            lent.Reader.Decode(frame - firstFrame[file], raw, stored);
-        }
-        finally
-        {
-            Return(lent);
-        }
+        using ReaderPool.Lease file = Lend(frame, out int own);
+        file.Reader.Decode(own, raw, stored);
     }
 
     /// <inheritdoc/>
-    public bool MarkQuality(int frame, Plane<SampleFlags> flags) => At(frame, (reader, own) => reader.MarkQuality(own, flags));
+    public bool MarkQuality(int frame, Plane<SampleFlags> flags)
+    {
+        using ReaderPool.Lease file = Lend(frame, out int own);
+        return file.Reader.MarkQuality(own, flags);
+    }
 
     /// <inheritdoc/>
-    public void Dispose()
-    {
-        foreach (OpenFile file in open)
-            file.Reader.Dispose();
-    }
+    public void Dispose() => readers.Dispose();
 
-    private T At<T>(int frame, Func<IStackReader, int, T> ask)
-    {
-        int file = FileOf(frame);
-        return With(file, reader => ask(reader, frame - firstFrame[file]));
-    }
-
-    private T With<T>(int file, Func<IStackReader, T> ask)
-    {
-        OpenFile lent = Lend(file);
-        try
-        {
-            return ask(lent.Reader);
-        }
-        finally
-        {
-            Return(lent);
-        }
-    }
-
-    private int FileOf(int frame)
+    private ReaderPool.Lease Lend(int frame, out int own)
     {
         ArgumentOutOfRangeException.ThrowIfNegative(frame);
         ArgumentOutOfRangeException.ThrowIfGreaterThanOrEqual(frame, FrameCount);
-        int at = Array.BinarySearch(firstFrame, frame); // every file has a frame, so that no two begin with the same
-        return at >= 0 ? at : ~at - 1;
-    }
-
-    private OpenFile Lend(int file)
-    {
-        lock (gate)
-        {
-            OpenFile? there = open.Find(o => o.File == file);
-            if (there is not null)
-                open.Remove(there);
-            else
-                there = new OpenFile(file, Open(files[file]));
-            open.Add(there); // the last used stands last
-            there.Users++;
-            return there;
-        }
-    }
-
-    private void Return(OpenFile lent)
-    {
-        lock (gate)
-        {
-            lent.Users--;
-            while (open.Count > MostOpen && open.Find(o => o.Users == 0) is { } oldest)
-            {
-                open.Remove(oldest);
-                oldest.Reader.Dispose();
-            }
-        }
-    }
-
-    private IStackReader Open(string file) => FormatFinder.Of(file, catalogue).Format.Open(file, options);
-
-    private sealed class OpenFile(int file, IStackReader reader)
-    {
-        public int File { get; } = file;
-
-        public IStackReader Reader { get; } = reader;
-
-        public int Users { get; set; }
+        int at = firstFrame.BinarySearch(frame); // every file has a frame, so that no two begin with the same
+        int file = at >= 0 ? at : ~at - 1;
+        own = frame - firstFrame[file];
+        return readers.Lend(file);
     }
 }

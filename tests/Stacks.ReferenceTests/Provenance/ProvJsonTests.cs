@@ -48,7 +48,7 @@ public class ProvJsonTests
             Remarks = ["one", "two"],
         };
         RunPlan plan = ProvenancePlan.Of(folder.File("recipe.toml"));
-        Sidecar.Write(folder.File("s.json"), record, plan, [new NamedDigest("bad.fits", "dd")], [new NamedDigest("out.fits", "ee"), new NamedDigest("out.mask.fits", "ff")]);
+        Sidecar.Write(folder.File("s.json"), record, plan, [new NamedDigest("second.tif", "cc")], [new NamedDigest("bad.fits", "dd")], [new NamedDigest("out.fits", "ee"), new NamedDigest("out.mask.fits", "ff")]);
         ToolResult result = Tool.Run(Tool.Python, "-c", Script, folder.File("s.json"));
         Assert.Equal("", result.Error);
         Assert.Equal(
@@ -59,6 +59,7 @@ public class ProvJsonTests
                 "entity stacks:output out.fits ee -",
                 "entity stacks:recipe recipe.toml aa prov:Plan",
                 "entity stacks:source in.fits cc -",
+                "entity stacks:source2 second.tif cc -",
                 "activity stacks:run smooth 3 px NaN 2023-11-14T22:13:20+00:00",
                 "remarks 2",
                 "agent stacks:plugin-Memory ['prov:SoftwareAgent']",
@@ -66,12 +67,15 @@ public class ProvJsonTests
                 "ProvUsage stacks:run stacks:mask1",
                 "ProvUsage stacks:run stacks:recipe",
                 "ProvUsage stacks:run stacks:source",
+                "ProvUsage stacks:run stacks:source2",
                 "ProvGeneration stacks:companion1 stacks:run 2023-11-14 22:13:20+00:00",
                 "ProvGeneration stacks:output stacks:run 2023-11-14 22:13:20+00:00",
                 "ProvAssociation stacks:run stacks:plugin-Memory stacks:recipe",
                 "ProvAssociation stacks:run stacks:software stacks:recipe",
                 "ProvDerivation stacks:companion1 stacks:source",
+                "ProvDerivation stacks:companion1 stacks:source2",
                 "ProvDerivation stacks:output stacks:source",
+                "ProvDerivation stacks:output stacks:source2",
             ],
             result.Output.TrimEnd().Split('\n'));
     }
