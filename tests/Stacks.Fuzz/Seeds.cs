@@ -21,6 +21,7 @@ internal static class Seeds
                     "NAXIS2  =                    3", "NAXIS3  =                    2", "BZERO   =                32768", "BLANK   =                    7", "OBSERVER= 'a ''b''  &'", "CONTINUE  'more'",
                     "HIERARCH some key = 1.5E3 / c", "COMMENT  text", "BSCALE  =                  1.5");
                 yield return Header("SIMPLE  =                    T", "BITPIX  =                    8", "NAXIS   =                    0", "EXTEND  =                    T");
+                yield return TableOfTiles();
                 break;
             case "fits-rice":
                 byte[] rice = new byte[RiceCode.MostBytes<int>(pixels.Length, Side)];
@@ -36,6 +37,10 @@ internal static class Seeds
                 break;
             case "fits-hcompress":
                 yield return [.. sides, 0xDD, 0x99, 0, 0, 0, Side, 0, 0, 0, Side, 0, 0, 0, 4, 0, 0, 0, 0, 0, 0, 1, 0, 2, 1, 1, .. Enumerable.Range(0, 60).Select(i => (byte)(i * 77))];
+                // 7 x 5 pixels of noise with two spikes, compressed by astropy 5.2.1.
+                yield return [6, 4, .. Convert.FromHexString(
+                    "dd9900000005000000070000000000000000000001400b0a0af43de81e6201e623d8fd5fff7c40f09003f91e17fdec7b1ff7b1eefe9f3ca0608805ac8ffbd8f63fef"
+                    + "60180058050244343fef63d8ffbd8f6c10bdc01107d06900bbe018d700")];
                 break;
             case "tiff-directory":
                 foreach (bool bigEndian in new[] { false, true })
@@ -59,6 +64,27 @@ internal static class Seeds
     {
         string text = string.Concat(cards.Append("END").Select(c => c.PadRight(80)));
         return [.. System.Text.Encoding.ASCII.GetBytes(text.PadRight((text.Length + 2879) / 2880 * 2880)), .. new byte[2880]];
+    }
+
+    /// <summary>An image of 16 x 2 samples of 16 bits in two tiles of RICE_1, behind an empty primary.</summary>
+    private static byte[] TableOfTiles()
+    {
+        short[] row = [.. Enumerable.Range(0, Side).Select(i => (short)(200 + (i * i % 13)))];
+        byte[] tile = new byte[RiceCode.MostBytes<short>(Side, 32)];
+        int length = RiceCode.Encode<short>(row, 32, tile);
+        byte[] table =
+        [
+            .. Header(
+                "XTENSION= 'BINTABLE'", "BITPIX  =                    8", "NAXIS   =                    2", "NAXIS1  =                    8", "NAXIS2  =                    2",
+                $"PCOUNT  = {length,20}", "GCOUNT  =                    1", "TFIELDS =                    1", "TTYPE1  = 'COMPRESSED_DATA'", $"TFORM1  = '1PB({length})'",
+                "ZIMAGE  =                    T", "ZBITPIX =                   16", "ZNAXIS  =                    2", "ZNAXIS1 =                   16", "ZNAXIS2 =                    2",
+                "ZTILE1  =                   16", "ZTILE2  =                    1", "ZCMPTYPE= 'RICE_1'", "ZNAME1  = 'BLOCKSIZE'", "ZVAL1   =                   32",
+                "ZNAME2  = 'BYTEPIX'", "ZVAL2   =                    2"),
+        ];
+        byte[] descriptor = [0, 0, 0, (byte)length, 0, 0, 0, 0];
+        ((byte[])[.. descriptor, .. descriptor, .. tile.AsSpan(0, length)]).CopyTo(table, table.Length - 2880);
+        byte[] primary = Header("SIMPLE  =                    T", "BITPIX  =                    8", "NAXIS   =                    0", "EXTEND  =                    T");
+        return [.. primary.AsSpan(0, 2880), .. table];
     }
 
     private static byte[] Bits(int width, params int[] codes)
