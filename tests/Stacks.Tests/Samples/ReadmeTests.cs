@@ -2,6 +2,7 @@ using System.Globalization;
 using System.Text;
 using System.Text.Json;
 using System.Xml.Linq;
+using Stacks.Formats.Fits;
 using Stacks.TestSupport;
 using Xunit;
 
@@ -69,6 +70,15 @@ public sealed class ReadmeTests(NightFieldRun field, SmoothNightFieldRun smooth,
 
         table.Append(CultureInfo.InvariantCulture, $"\n\nNoise in empty patches is at least {Math.Floor(10 * least) / 10:F1} times lower in every frame.");
         AssertBlock("smoothing", table.ToString());
+    }
+
+    [Fact]
+    public void TheCardsThatMayDifferAreTheDeclaredOnes()
+    {
+        StringBuilder table = new("| cards | in headers | what becomes of them |\n|---|---|---|");
+        foreach (CardChange change in CardChanges.Declared)
+            table.Append(CultureInfo.InvariantCulture, $"\n| {string.Join(", ", change.Keywords.Select(k => k.Length == 0 ? "blank cards" : k))} | {change.When} | {change.What} |");
+        AssertBlock("cards", table.ToString());
     }
 
     [Fact]
