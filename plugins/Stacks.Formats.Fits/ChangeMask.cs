@@ -22,8 +22,8 @@ internal sealed class ChangeMask : IDisposable
     /// <summary>Creates the waiting file; it is removed when this is disposed.</summary>
     public ChangeMask(string outputPath) => spool = new PartialFile(outputPath + ".changes.partial", FileOptions.DeleteOnClose);
 
-    /// <summary>True for a change mask that an earlier run of this program wrote.</summary>
-    public static bool IsOurs(Hdu hdu) => hdu.Kind == HduKind.CompressedImage && hdu.Name == ExtensionName;
+    /// <summary>True for a change mask that an earlier run of this program wrote, also when it was unpacked since.</summary>
+    public static bool IsOurs(Hdu hdu) => hdu.IsImage && hdu.BitPix == 8 && hdu.Name == ExtensionName;
 
     /// <summary>Compresses the flags of a frame into a tile.</summary>
     public static void Compress(ReadOnlySpan<byte> flags, ByteBuffer tile)

@@ -102,7 +102,7 @@ internal sealed class HduScan
             BitPix = bitPix,
             Axes = axes,
             Compression = isCompressed ? header.OwnText("ZCMPTYPE")?.Trim() ?? "" : null,
-            Name = (isCompressed ? RestoredHeader.Of(header, asPrimary: false) : header).OwnText("EXTNAME")?.Trim(),
+            Name = header.OwnText("EXTNAME")?.Trim() is { } name && !(isCompressed && name == RestoredHeader.NoName) ? name : null,
             Version = header.FindNumber("EXTVER") is { } version && Math.Abs(version) < int.MaxValue ? (long)version : null,
             HeaderOffset = offset,
             DataOffset = dataOffset,

@@ -10,7 +10,7 @@ namespace Stacks.Formats.Fits.Tiles;
 internal static class RestoredHeader
 {
     /// <summary>The EXTNAME that programs give to an image without one (common practice).</summary>
-    private const string NoName = "COMPRESSED_IMAGE";
+    public const string NoName = "COMPRESSED_IMAGE";
 
     /// <summary>Keywords of the table and of the compression.</summary>
     private static readonly string[] OfTable =
@@ -59,12 +59,13 @@ internal static class RestoredHeader
 
         // Integers that are missing have BLANK; some programs call it ZBLANK, which the standard keeps for quantised floats.
         bool isBlankRenamed = table.OwnInteger("ZBITPIX") > 0 && table.Own("BLANK") is null;
+        long columns = table.OwnInteger("TFIELDS") ?? 0;
         bool isDropped = false;
         foreach (FitsCard card in table.Cards)
         {
             if (isDropped && card.Is("CONTINUE"))
                 continue;
-            FitsCard? kept = card.HasValue ? Keep(card, table, asPrimary, isBlankRenamed) : card;
+            FitsCard? kept = card.HasValue ? Keep(card, columns, asPrimary, isBlankRenamed) : card;
             isDropped = kept is null;
             if (kept is { } other)
                 others.Add(other);
@@ -77,14 +78,17 @@ internal static class RestoredHeader
     /// True when a primary header says nothing of its own, so that it is the one that compression puts before an image that
     /// was the primary array: mandatory keywords, and comments that stand in the image's header too or are of no meaning.
     /// </summary>
-    public static bool IsBare(FitsHeader primary, FitsHeader table) =>
-        primary.OwnInteger("NAXIS") == 0 && primary.Cards.All(card =>
+    public static bool IsBare(FitsHeader primary, FitsHeader table)
+    {
+        HashSet<FitsCard> others = [.. table.Cards];
+        return primary.OwnInteger("NAXIS") == 0 && primary.Cards.All(card =>
             card == FitsCard.Blank
             || OfBarePrimary.Any(card.Is)
             || TileHeader.OfBarePrimary.Any(text => card.Image.StartsWith(text, StringComparison.Ordinal))
-            || table.Cards.Contains(card));
+            || others.Contains(card));
+    }
 
-    private static FitsCard? Keep(FitsCard card, FitsHeader table, bool asPrimary, bool isBlankRenamed)
+    private static FitsCard? Keep(FitsCard card, long columns, bool asPrimary, bool isBlankRenamed)
     {
         string keyword = card.Keyword;
         foreach ((string kept, string original) in Renamed)
@@ -100,7 +104,7 @@ internal static class RestoredHeader
         bool isOfTable = OfTable.Contains(keyword)
             || keyword is "ZSIMPLE" or "ZTENSION" or "ZBITPIX" or "ZNAXIS" or "ZPCOUNT" or "ZGCOUNT"
             || (keyword == "EXTNAME" && card.Value.Trim() == NoName)
-            || Numbered(keyword, OfColumns) is { } column && column <= table.OwnInteger("TFIELDS")
+            || Numbered(keyword, OfColumns) is { } column && column <= columns
             || Numbered(keyword, OfTiles) is not null
             || Numbered(keyword, ["ZNAXIS"]) is not null;
         return isOfTable ? null : card;

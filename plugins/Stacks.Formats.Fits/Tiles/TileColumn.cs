@@ -11,7 +11,8 @@ namespace Stacks.Formats.Fits.Tiles;
 /// <param name="HeapType">Letter of the elements in the heap; P and Q only.</param>
 internal sealed record TileColumn(string Name, int Offset, long Repeat, char Type, char HeapType)
 {
-    private const int MostFields = 999;
+    /// <summary>The standard's columns are six; a program may add some of its own.</summary>
+    private const int MostFields = 99;
 
     /// <summary>True for a column of arrays in the heap.</summary>
     public bool IsInHeap => Type is 'P' or 'Q' && Repeat == 1;

@@ -20,7 +20,10 @@ internal sealed record TilePlan
     private const long TileBytes = 1 << 16;
 
     /// <summary>The plan for an image of two and more axes.</summary>
-    public TilePlan(SampleType type, IReadOnlyList<long> axes)
+    /// <param name="type">Type of its samples.</param>
+    /// <param name="axes">Its axes.</param>
+    /// <param name="longestShortHeap">Bytes of tiles beyond which their offsets take 64 bits.</param>
+    public TilePlan(SampleType type, IReadOnlyList<long> axes, long longestShortHeap = int.MaxValue)
     {
         Type = type;
         long rows = Math.Clamp(TileBytes / (axes[0] * type.Size()), 1, axes[1]);
@@ -30,7 +33,7 @@ internal sealed record TilePlan
 
         // What does not compress grows by less than an eighth, and by less than 64 bytes a tile.
         Int128 most = ((Int128)samples * type.Size() * 9 / 8) + (Grid.Tiles * 64);
-        DescriptorType = most > int.MaxValue ? 'Q' : 'P';
+        DescriptorType = most > longestShortHeap ? 'Q' : 'P';
     }
 
     /// <summary>Type of the samples.</summary>

@@ -76,18 +76,16 @@ internal static class TileRows
     /// <summary>Planes whose tiles are all in a truncated file, up to the first one that is not.</summary>
     public static long WholePlanes(FitsFile file, Hdu hdu)
     {
-        byte[] row = new byte[hdu.Tiles!.RowBytes];
+        TiledImage image = hdu.Tiles!;
+        if (image.HeapOffset > hdu.PresentBytes)
+            return 0;
+        TileEntry[] entries = new TileEntry[CountOf(hdu)];
         for (long plane = 0; plane < hdu.PromisedPlanes; plane++)
         {
-            long first = hdu.Tiles.Grid.FirstTileOf(plane);
-            for (long n = 0; n < hdu.Tiles.Grid.TilesOfPlane; n++)
+            ReadEntries(file, hdu, plane, entries);
+            foreach (TileEntry entry in entries)
             {
-                long at = (first + n) * row.Length;
-                if (at + row.Length > hdu.PresentBytes)
-                    return plane;
-                file.Read(row, hdu.DataOffset + at);
-                TileEntry entry = ReadEntry(hdu, row, first + n, hdu.Tiles.Grid.PartOf(plane, n));
-                if (hdu.Tiles.HeapOffset + entry.Offset + entry.Length > hdu.PresentBytes)
+                if (image.HeapOffset + entry.Offset + entry.Length > hdu.PresentBytes)
                     return plane;
             }
         }

@@ -1,3 +1,6 @@
+using Stacks.Abstractions;
+using Stacks.Formats.Fits;
+using Stacks.Formats.Fits.Tiles;
 using Stacks.TestSupport;
 using Xunit;
 
@@ -58,6 +61,67 @@ public class TileWriteTests
             """,
             folder.File("plain.fits"),
             folder.File("packed.fits"));
+    }
+
+    [NeedsTheory(Needs.Astropy, "fitsverify", "funpack")]
+    [InlineData("PrimaryHDU(a((2, 3, 20, 30)))")]
+    [InlineData("PrimaryHDU(), fits.ImageHDU(a((20, 30)), name='SCI', ver=1), fits.ImageHDU(a((4, 8, 9)) + 7, name='SCI', ver=2), fits.ImageHDU(a((20, 30)), name='DQ', ver=1)")]
+    [InlineData("PrimaryHDU(a((20, 30))), fits.BinTableHDU.from_columns([fits.Column('A', '1PJ()', array=np.array([[1, 2], [3]], dtype=object))]), fits.ImageHDU(a((5, 5)))")]
+    public void Files_of_several_parts_unpack_to_the_result_that_was_not_compressed(string parts)
+    {
+        using TemporaryFolder folder = new();
+        Outside.Python(
+            $"""
+            import sys, numpy as np
+            from astropy.io import fits
+            a = lambda shape: np.arange(np.prod(shape)).reshape(shape).astype('i2')
+            fits.HDUList([fits.{parts}]).writeto(sys.argv[1])
+            """,
+            folder.File("made.fits"));
+        AssertUnpacksToPlain(folder, folder.File("made.fits"));
+    }
+
+    [NeedsFact(Needs.Astropy, "fitsverify", "funpack")]
+    public void Tables_with_64_bit_descriptors_are_read_by_others()
+    {
+        using TemporaryFolder folder = new();
+        Assert.Equal('P', new TilePlan(SampleType.UInt16, [30000, 30000]).DescriptorType);
+        Assert.Equal('Q', new TilePlan(SampleType.UInt16, [30000, 30000, 2]).DescriptorType);
+        TilePlan plan = new(SampleType.UInt16, [30, 20, 2], longestShortHeap: 0);
+        byte[] samples = new byte[30 * 20 * 2 * 2];
+        new Random(1).NextBytes(samples);
+        using (PartialFile file = new(folder.File("packed.fits")))
+        {
+            List<FitsCard> cards = NewHeader.Primary([30, 20, 2], new FrameLayout { Width = 30, Height = 20, SampleType = SampleType.UInt16 }, SampleType.UInt16);
+            file.Write(HeaderImage.Build(TileHeader.BarePrimary(), FitsBlock.Bytes, 0), 0);
+            TileTable table = new(file, 2 * FitsBlock.Bytes, plan);
+            ByteBuffer encoded = new();
+            for (int frame = 0; frame < 2; frame++)
+            {
+                TileEncoder.Encode(plan, samples.AsSpan(frame * 1200, 1200).ToArray(), encoded);
+                table.Append(encoded.Written);
+            }
+
+            uint sum = table.Finish();
+            file.Write(HeaderImage.Build(TileHeader.Of(cards, plan, table.HeapBytes, table.Longest), FitsBlock.Bytes, sum), FitsBlock.Bytes);
+        }
+
+        Assert.Equal((0, 0), Outside.Verify(folder.File("packed.fits")));
+        Outside.Run("funpack", "-O", folder.File("unpacked.fits"), folder.File("packed.fits"));
+        File.WriteAllBytes(folder.File("samples.raw"), samples);
+        Outside.Python(
+            """
+            import sys, numpy as np
+            from astropy.io import fits
+            with fits.open(sys.argv[1], disable_image_compression=True) as f:
+                assert f[1].header['TFORM1'].startswith('1QB') and f[1].header['NAXIS1'] == 16
+            expected = np.fromfile(sys.argv[3], '<u2').reshape(2, 20, 30)
+            for data in fits.getdata(sys.argv[1], 1), fits.getdata(sys.argv[2], 0):
+                assert data.dtype.kind == 'u' and np.array_equal(data, expected)
+            """,
+            folder.File("packed.fits"),
+            folder.File("unpacked.fits"),
+            folder.File("samples.raw"));
     }
 
     /// <summary>
