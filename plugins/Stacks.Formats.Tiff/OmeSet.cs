@@ -18,10 +18,12 @@ internal readonly record struct OmeSetPlane(int File, int Page, OmePlane Plane, 
 internal sealed class OmeSet
 {
     private const long LongestText = 64L << 20;
-    private const int MostPlanes = 1 << 24;
+    private const int MostPerPage = 4; // honest elements name a page once; the bound ends hostile ones
     private readonly TiffFormat format;
     private readonly ReadOptions options;
     private readonly List<string> paths = [];
+    private readonly Dictionary<string, SetFile> opened = [];
+    private long allPages;
     private readonly List<string> losses = [];
     private readonly List<OmeSetPlane> planes = [];
 
@@ -100,6 +102,8 @@ internal sealed class OmeSet
         return new OmeSet(format, path, ome, options) { Companion = companion }.Find();
     }
 
+    private sealed record SetFile(int Number, bool[] IsFrame, string? Uuid);
+
     private OmeSet Find()
     {
         List<(int Image, OmeSetPlane Plane)> found = [];
@@ -111,24 +115,23 @@ internal sealed class OmeSet
             foreach (IGrouping<string?, OmeTiffData> ofFile in image.TiffData.GroupBy(d => d.OtherFile))
             {
                 string path = ofFile.Key is { } name ? Beside(Path, name) : Companion is null ? Path : throw NoFile(image);
-                if (Open(path, ofFile) is not { } isFrame)
+                if (Open(path, ofFile) is not { } file)
                     continue;
-                int pages = isFrame.Length;
-                int file = paths.IndexOf(path);
+                int pages = file.IsFrame.Length;
                 foreach (OmeTiffData data in ofFile)
                 {
                     (int Page, OmePlane Plane)[] covered = [.. OmePlanes.Of(image, data, pages)];
                     if (data.Planes is { } promised && covered.Length < promised && (Int128)covered.Length + data.Ifd >= pages)
                         Lose($"{System.IO.Path.GetFileName(path)} has {pages} pages, the set wants {promised} of them from page {data.Ifd} on");
                     named += covered.Length;
-                    if (named > MostPlanes)
-                        throw new StackFormatException(Path, $"the OME-XML names more than {MostPlanes} planes", "get the file again");
+                    if (named > MostPerPage * allPages)
+                        throw new StackFormatException(Path, "the OME-XML names pages of its files again and again", "get the file again");
                     foreach ((int page, OmePlane plane) in covered)
                     {
-                        if (!isFrame[page])
+                        if (!file.IsFrame[page])
                             Lose(string.Create(CultureInfo.InvariantCulture, $"page {page} of {System.IO.Path.GetFileName(path)}, which the OME set wants, is a thumbnail or is lost"));
                         else if (seen.Add((i, OmePlanes.Number(plane))))
-                            found.Add((i, new OmeSetPlane(file, page, plane, data)));
+                            found.Add((i, new OmeSetPlane(file.Number, page, plane, data)));
                     }
                 }
             }
@@ -138,35 +141,42 @@ internal sealed class OmeSet
         return planes.Count > 0 ? this : throw new StackFormatException(Path, "the OME-XML names no plane that is there", "copy all files of the set into one folder");
     }
 
-    /// <summary>For each page of a file whether it is a frame; null where the file is missing and may be.</summary>
-    private bool[]? Open(string path, IEnumerable<OmeTiffData> wanted)
+    /// <summary>A file of the set, opened the first time it is asked for; null where it is missing and may be.</summary>
+    private SetFile? Open(string path, IEnumerable<OmeTiffData> wanted)
     {
-        string name = System.IO.Path.GetFileName(path);
-        if (!File.Exists(path))
+        if (!opened.TryGetValue(path, out SetFile? file))
         {
-            long count = wanted.Sum(d => (long)(d.Planes ?? 1));
-            Lose(string.Create(CultureInfo.InvariantCulture, $"the file {name} of the OME set is missing, and with it {count} planes"));
-            return null;
+            if (!File.Exists(path))
+            {
+                long count = wanted.Sum(d => (long)(d.Planes ?? 1));
+                Lose(string.Create(CultureInfo.InvariantCulture, $"the file {System.IO.Path.GetFileName(path)} of the OME set is missing, and with it {count} planes"));
+                return null;
+            }
+
+            file = Look(path);
+            opened.Add(path, file);
         }
 
+        if (wanted.FirstOrDefault(d => d.OtherUuid is not null) is { OtherUuid: { } link } && file.Uuid is not null && file.Uuid != link)
+            throw new StackFormatException(path, $"it is {file.Uuid}, the OME set wants {link} of this name", "copy the files of the set again from one source");
+        return file;
+    }
+
+    private SetFile Look(string path)
+    {
         using TiffReader reader = TiffReader.OpenAlone(format, path, options);
-        losses.AddRange(reader.Losses.Where(_ => !paths.Contains(path)).Select(loss => $"{name}: {loss}"));
-        string? uuid = reader.Metadata.Ome?.Uuid;
-        if (wanted.FirstOrDefault(d => d.OtherUuid is not null) is { OtherUuid: { } link } && uuid is not null && uuid != link)
-            throw new StackFormatException(path, $"it is {uuid}, the OME set wants {link} of this name", "copy the files of the set again from one source");
+        losses.AddRange(reader.Losses.Select(loss => $"{System.IO.Path.GetFileName(path)}: {loss}"));
         if (reader.FrameCount != reader.Index.Pages.Count(p => p.Layout.Frame is not null))
             throw new StackFormatException(path, "a file of an OME set with several samples a pixel", "put the set into one file first");
-        if (!paths.Contains(path))
-        {
-            if (paths.Count > 0 && BigEndian != reader.File.BigEndian)
-                throw new StackFormatException(path, "its byte order is another than that of the set's first file", "write the files of the set in one byte order");
-            paths.Add(path);
-            BigEndian = reader.File.BigEndian;
-            IsBig |= reader.File.IsBig;
-            OtherBytes += reader.File.Length - Math.Min(reader.File.Length, reader.Index.ImageBytes);
-        }
-
-        return [.. reader.Index.Pages.Select(p => p.Layout.Frame is not null)];
+        if (paths.Count > 0 && BigEndian != reader.File.BigEndian)
+            throw new StackFormatException(path, "its byte order is another than that of the set's first file", "write the files of the set in one byte order");
+        paths.Add(path);
+        BigEndian = reader.File.BigEndian;
+        IsBig |= reader.File.IsBig;
+        OtherBytes += reader.File.Length - Math.Min(reader.File.Length, reader.Index.ImageBytes);
+        bool[] isFrame = [.. reader.Index.Pages.Select(p => p.Layout.Frame is not null)];
+        allPages += isFrame.Length;
+        return new SetFile(paths.Count - 1, isFrame, reader.Metadata.Ome?.Uuid);
     }
 
     private void Lose(string what)

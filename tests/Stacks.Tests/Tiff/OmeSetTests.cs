@@ -166,6 +166,16 @@ public sealed class OmeSetTests : IDisposable
     }
 
     [Fact]
+    public void A_text_that_names_the_same_pages_over_and_over_is_refused()
+    {
+        OmeSetFiles.Write(folder, companion: Companion);
+        string text = File.ReadAllText(folder.File(Companion));
+        string again = string.Concat(Enumerable.Range(0, 50).Select(t => $"""<TiffData FirstT="{t}" IFD="0" PlaneCount="3"><UUID FileName="{OmeSetFiles.Name(0)}">{OmeSetFiles.Uuid(0)}</UUID></TiffData>"""));
+        File.WriteAllText(folder.File(Companion), text.Replace("SizeT=\"2\"", "SizeT=\"100\"", StringComparison.Ordinal).Replace("</Pixels>", again + "</Pixels>", StringComparison.Ordinal));
+        Assert.Contains("again and again", Assert.Throws<StackFormatException>(() => Open(Companion)).Message, StringComparison.Ordinal);
+    }
+
+    [Fact]
     public void Companions_that_are_broken_hostile_or_absent_are_refused()
     {
         OmeSetFiles.Write(folder, companion: Companion);
