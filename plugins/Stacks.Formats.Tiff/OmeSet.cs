@@ -50,6 +50,9 @@ internal sealed class OmeSet
     /// <summary>The planes, in order.</summary>
     public IReadOnlyList<OmeSetPlane> Planes => planes;
 
+    /// <summary>Files with pages to which the text gives no place, and how many; a result does not carry these.</summary>
+    public IReadOnlyList<(string File, int Pages)> Unplaced { get; private set; } = [];
+
     /// <summary>What is missing, where that is allowed.</summary>
     public IReadOnlyList<string> Losses => losses;
 
@@ -70,7 +73,7 @@ internal sealed class OmeSet
         if (ome.MetadataFile is { } companion && options.AllowTruncated && !File.Exists(Beside(reader.Path, companion)))
             return null;
         if (ome.MetadataFile is { } there)
-            return OfCompanion((TiffFormat)reader.Format, reader.Path, Beside(reader.Path, there), options);
+            return OfCompanion((TiffFormat)reader.Format, reader.Path, Beside(reader.Path, there), ome.MetadataUuid, options);
         return TiffParts.OtherFiles(ome).Any() ? new OmeSet((TiffFormat)reader.Format, reader.Path, ome, options).Find() : null;
     }
 
@@ -78,8 +81,9 @@ internal sealed class OmeSet
     /// <param name="format">The format.</param>
     /// <param name="path">The file that was named: the companion, or a TIFF file that points to it.</param>
     /// <param name="companion">The companion.</param>
+    /// <param name="uuid">Its UUID as the TIFF file has it; null where nobody says.</param>
     /// <param name="options">How files are opened.</param>
-    public static OmeSet OfCompanion(TiffFormat format, string path, string companion, ReadOptions options)
+    public static OmeSet OfCompanion(TiffFormat format, string path, string companion, string? uuid, ReadOptions options)
     {
         if (!File.Exists(companion))
             throw new StackFormatException(path, $"its metadata stand in {System.IO.Path.GetFileName(companion)}, which is not beside it", "copy all files of the set into one folder, or take its pages without their places with --salvage");
@@ -99,6 +103,8 @@ internal sealed class OmeSet
             ?? throw new StackFormatException($"{companion}, byte 0", problem ?? "this is not OME-XML", "get the file again");
         if (ome.MetadataFile is not null)
             throw new StackFormatException(companion, "the file says itself that its metadata stand in another", "get the file again");
+        if (uuid is not null && ome.Uuid is not null && uuid != ome.Uuid)
+            throw new StackFormatException(companion, $"it is {ome.Uuid}, {System.IO.Path.GetFileName(path)} wants {uuid} of this name", "copy the files of the set again from one source");
         return new OmeSet(format, path, ome, options) { Companion = companion }.Find();
     }
 
@@ -138,6 +144,11 @@ internal sealed class OmeSet
         }
 
         planes.AddRange(found.OrderBy(f => f.Image).ThenBy(f => OmePlanes.Number(f.Plane.Plane)).Select(f => f.Plane));
+        Unplaced =
+        [
+            .. opened.Select(f => (System.IO.Path.GetFileName(f.Key), f.Value.IsFrame.Count(frame => frame) - planes.Where(p => p.File == f.Value.Number).Select(p => p.Page).Distinct().Count()))
+                .Where(f => f.Item2 > 0),
+        ];
         return planes.Count > 0 ? this : throw new StackFormatException(Path, "the OME-XML names no plane that is there", "copy all files of the set into one folder");
     }
 

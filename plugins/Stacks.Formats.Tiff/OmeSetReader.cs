@@ -40,6 +40,7 @@ internal sealed class OmeSetReader : IStackReader
     [
         .. Set.Planes.GroupBy(p => p.File).Select(g => new StackPart(
             System.IO.Path.GetFileName(Set.Paths[g.Key]), string.Create(CultureInfo.InvariantCulture, $"{g.Count()} planes of the set"), "science", "filtered")),
+        .. Set.Unplaced.Select(f => new StackPart(f.File, $"{f.Pages} pages without a place in the set", "other pages", "not carried")),
         new StackPart("OME-XML", $"{Set.Ome.Xml.Text.Length} characters", "metadata", "carried"),
     ];
 

@@ -48,6 +48,9 @@ internal sealed class OmeXml
     /// <summary>The file that holds the metadata of a binary-only file; null for an ordinary one.</summary>
     public string? MetadataFile { get; private set; }
 
+    /// <summary>UUID of that file; null where it is not given.</summary>
+    public string? MetadataUuid { get; private set; }
+
     /// <summary>Where an annotation goes: before the end tag of StructuredAnnotations; null where there is none.</summary>
     public int? AnnotationsEnd { get; private set; }
 
@@ -142,6 +145,7 @@ internal sealed class OmeXml
                 break;
             case "OME/BinaryOnly":
                 MetadataFile = reader.GetAttribute("MetadataFile") ?? "of unknown name";
+                MetadataUuid = reader.GetAttribute("UUID")?.Trim();
                 break;
             case "OME/Image":
                 Images.Add(new OmeImage { Name = reader.GetAttribute("Name") ?? reader.GetAttribute("ID") ?? "" });

@@ -26,7 +26,7 @@ public sealed class TiffFormat : IStackFormat
 
     /// <inheritdoc/>
     public IStackReader Open(string path, ReadOptions options) => IsCompanion(path)
-        ? new OmeSetReader(this, OmeSet.OfCompanion(this, path, path, options), options)
+        ? new OmeSetReader(this, OmeSet.OfCompanion(this, path, path, null, options), options)
         : TiffReader.Open(this, path, options);
 
     /// <inheritdoc/>

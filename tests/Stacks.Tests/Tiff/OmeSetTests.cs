@@ -146,6 +146,31 @@ public sealed class OmeSetTests : IDisposable
     }
 
     [Fact]
+    public void Pages_without_a_place_are_named_as_left_out()
+    {
+        string named = OmeSetFiles.Write(folder);
+        string text = System.Text.Encoding.Latin1.GetString(File.ReadAllBytes(named));
+        string link = $"""<TiffData FirstC="1" FirstZ="2" FirstT="1" IFD="5" PlaneCount="1"><UUID FileName="{OmeSetFiles.Name(1)}">{OmeSetFiles.Uuid(1)}</UUID></TiffData>""";
+        Assert.Contains(link, text, StringComparison.Ordinal);
+        File.WriteAllText(named, text.Replace(link, new string(' ', link.Length), StringComparison.Ordinal), System.Text.Encoding.Latin1);
+
+        ToolResult result = bench.Run(bench.Recipe(), named);
+        Assert.Equal(0, result.ExitCode);
+        Assert.Contains("cells_c0.ome.tif: 11 frames", result.Output, StringComparison.Ordinal);
+        Assert.Contains("not carried: cells_c1.ome.tif (other pages, 1 pages without a place in the set)", result.Output, StringComparison.Ordinal);
+    }
+
+    [Fact]
+    public void A_companion_of_another_set_is_refused()
+    {
+        OmeSetFiles.Write(folder, companion: Companion);
+        string text = File.ReadAllText(folder.File(Companion));
+        File.WriteAllText(folder.File(Companion), text.Replace("00000009-1111", "0000000a-1111", StringComparison.Ordinal));
+
+        Assert.Contains("wants urn:uuid:00000009-1111-4222-8333-444444444444 of this name", Assert.Throws<StackFormatException>(() => Open(OmeSetFiles.Name(0))).Message, StringComparison.Ordinal);
+    }
+
+    [Fact]
     public void Links_that_lead_elsewhere_and_files_of_another_name_are_refused()
     {
         string named = OmeSetFiles.Write(folder);
