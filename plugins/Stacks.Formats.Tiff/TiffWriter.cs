@@ -155,9 +155,13 @@ internal sealed class TiffWriter : IStackWriter
         for (int f = 0; f < frames; f++)
         {
             FrameLayout layout = request.Source.Layout(f);
-            bool typeChanged = TypeOf(f) != layout.SampleType;
-            bool changed = typeChanged || !ledger[f].SourceDigest.AsSpan().SequenceEqual(ledger[f].ResultDigest);
-            IEnumerable<OutputField> carried = set?.CarriedFieldsOf(f, typeChanged, changed) ?? [];
+            IEnumerable<OutputField> carried = [];
+            if (set is not null)
+            {
+                bool typeChanged = TypeOf(f) != layout.SampleType;
+                bool changed = typeChanged || !ledger[f].SourceDigest.AsSpan().SequenceEqual(ledger[f].ResultDigest);
+                carried = set.CarriedFieldsOf(f, typeChanged, changed);
+            }
 
             // The text of the set goes into the first page; the links of the others to it no longer hold.
             IEnumerable<OutputField> fields = stack.ImageFields(f, layout, TypeOf(f)).Concat(carried.Where(c => c.Tag != Tag.ImageDescription)).Append(stack.BlackIsZero);
