@@ -39,7 +39,7 @@ internal sealed class RunAccount(RunPlan plan)
     /// <summary>Makes the record.</summary>
     public void Finish(string sourceDigest, string workDigest, DateTimeOffset created, IReadOnlyList<string> damage)
     {
-        Warnings = [.. plan.Reader.Losses.Select(loss => "salvaged: " + loss), .. damage, .. noise.Warnings(ledger.Count), .. FrameWarnings(), .. StepWarnings()];
+        Warnings = [.. plan.Reader.Losses.Select(loss => "salvaged: " + loss), .. damage, .. noise.Warnings(ledger.Count), .. FrameWarnings(), .. StepWarnings(), .. FormatWarnings()];
         provenance = new ProvenanceRecord
         {
             Program = Software.Name,
@@ -111,6 +111,12 @@ internal sealed class RunAccount(RunPlan plan)
     {
         if (plan.Recipe.Input.Defects is not null && !plan.Steps.Any(s => s.Filter.Plugin.Kind == FilterKind.Selective))
             yield return "defects are given, but no step is selective: none is replaced";
+    }
+
+    private IEnumerable<string> FormatWarnings()
+    {
+        if (plan.Reader.Format.Id != plan.OutputFormat.Id)
+            yield return $"keywords and tags of the source's headers do not go into another format: they stand in {Path.GetFileName(plan.Reader.Path)} alone";
     }
 
     private IEnumerable<string> SmoothingRemarks()

@@ -1,6 +1,6 @@
 using System.Text;
-using Stacks.TestSupport;
 using Stacks.Tests.Tiff;
+using Stacks.TestSupport;
 using Xunit;
 
 namespace Stacks.Tests.Cli;

@@ -23,7 +23,7 @@ public class MemoryTests
         // Frames of 64 kB through every kind of buffer; after warm-up a frame may cost objects, not planes.
         _ = Allocated(lattice, 181, 4);
         long few = Allocated(lattice, 181, 10), many = Allocated(lattice, 181, 60);
-        Assert.InRange((many - few) / 50, 0, 16384);
+        Assert.InRange((many - few) / 50, -4096, 16384); // other threads of the test process allocate too
     }
 
     [Theory]

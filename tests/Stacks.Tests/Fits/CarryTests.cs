@@ -59,6 +59,7 @@ public sealed class CarryTests : IDisposable
 
         Assert.Equal(0, result.ExitCode);
         Assert.Contains("not carried: ERR (error plane", result.Output, StringComparison.Ordinal);
+        Assert.Contains("headers do not go into another format", result.Output, StringComparison.Ordinal);
     }
 
     /// <summary>Random groups in the primary HDU (Standard 4.0, section 6) before an image extension.</summary>
