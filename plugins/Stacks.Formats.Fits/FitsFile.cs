@@ -43,6 +43,12 @@ internal sealed class FitsFile : IDisposable
     /// <summary>Bytes in the file when it was opened; of a gzipped one, the bytes of what it holds that are known by now.</summary>
     public long Length => gzip?.Known ?? fileLength;
 
+    /// <summary>
+    /// More bytes than a gzipped file can hold, whatever is in it: Deflate stands for 258 bytes in two bits at most
+    /// (RFC 1951). Null for a plain file.
+    /// </summary>
+    public long? MostInflated => gzip is null ? null : 1032 * fileLength;
+
     /// <summary>Why a gzipped file is not whole; null while it seems to be.</summary>
     public string? Damage => gzip?.DamagedAt is { } offset
         ? $"the gzip stream is damaged: it cannot be inflated beyond byte {offset} of what it holds, or its checksum does not agree and any frame may hold wrong samples"

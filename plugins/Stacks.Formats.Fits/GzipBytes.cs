@@ -26,20 +26,30 @@ internal sealed class GzipBytes(string path) : IDisposable
         if (offset + count <= Known)
             return count;
         GzipPass pass = Lend(offset);
-        pass.SkipTo(offset + count);
-        long present = Math.Max(0, pass.Position - offset);
-        Return(pass);
-        return present;
+        try
+        {
+            pass.SkipTo(offset + count);
+            return Math.Max(0, pass.Position - offset);
+        }
+        finally
+        {
+            Return(pass);
+        }
     }
 
     /// <summary>Fills a buffer from an offset on; returns how many bytes there were.</summary>
     public int Read(Span<byte> buffer, long offset)
     {
         GzipPass pass = Lend(offset);
-        pass.SkipTo(offset);
-        int got = pass.Position < offset ? 0 : pass.Read(buffer);
-        Return(pass);
-        return got;
+        try
+        {
+            pass.SkipTo(offset);
+            return pass.Position < offset ? 0 : pass.Read(buffer);
+        }
+        finally
+        {
+            Return(pass);
+        }
     }
 
     /// <inheritdoc/>

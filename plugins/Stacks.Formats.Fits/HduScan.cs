@@ -85,6 +85,8 @@ internal sealed class HduScan
         (int bitPix, long[] axes) = Array(header, "");
         HduKind kind = KindOf(header, index, axes);
         long dataBytes = DataBytes(header, "", kind, bitPix, axes, index);
+        if (dataBytes > file.MostInflated)
+            throw new StackFormatException($"{header.Where}, keywords NAXISn", $"they promise {dataBytes} bytes, and a gzipped file of this length cannot hold more than {file.MostInflated}", GetAgain);
         long dataOffset = offset + header.Bytes;
         bool isCompressed = kind == HduKind.CompressedImage;
         bool isEmpty = kind == HduKind.Image && dataBytes == 0;

@@ -116,6 +116,19 @@ public sealed class GzipTests : IDisposable
         Assert.True(GC.GetAllocatedBytesForCurrentThread() - before < 8 << 20);
     }
 
+    /// <summary>A promise that no gzip stream of this length can keep is refused before anything is inflated for it.</summary>
+    [Theory]
+    [InlineData(false)]
+    [InlineData(true)]
+    public void Headers_that_promise_more_than_gzip_can_hold_are_refused_at_once(bool salvage)
+    {
+        byte[] file = new FitsBytes().Primary(16, [30000, 30000, 1_000_000_000], new byte[1 << 20]).ToArray();
+
+        long before = GC.GetAllocatedBytesForCurrentThread();
+        Assert.Contains("cannot hold more than", Assert.Throws<StackFormatException>(() => Open(Gzip(file), "a.fits.gz", salvage).Dispose()).Message, StringComparison.Ordinal);
+        Assert.True(GC.GetAllocatedBytesForCurrentThread() - before < 8 << 20);
+    }
+
     private IStackReader Open(byte[] bytes, string name, bool allowTruncated = false)
     {
         File.WriteAllBytes(folder.File(name), bytes);
