@@ -51,8 +51,11 @@ internal sealed class OmeImage
     /// <summary>Size of a pixel and time between planes, as written, with units.</summary>
     public List<(string Label, string Value)> Scales { get; } = [];
 
-    /// <summary>Name of each channel; null where it has none.</summary>
+    /// <summary>Name of each Channel element, which stands for a channel or for all samples of a pixel; null where it has none.</summary>
     public List<string?> ChannelNames { get; } = [];
+
+    /// <summary>Samples of a pixel, which share a page and are channels that follow each other; set when the pages are known.</summary>
+    public int Samples { get; set; } = 1;
 
     /// <summary>Where the planes are.</summary>
     public List<OmeTiffData> TiffData { get; } = [];
@@ -60,7 +63,7 @@ internal sealed class OmeImage
 
 /// <summary>What a page is in its image.</summary>
 /// <param name="Image">The image.</param>
-/// <param name="C">Channel.</param>
+/// <param name="C">Channel of its first sample.</param>
 /// <param name="Z">Place along z.</param>
 /// <param name="T">Time.</param>
 internal readonly record struct OmePlane(OmeImage Image, int C, int Z, int T);
@@ -68,25 +71,38 @@ internal readonly record struct OmePlane(OmeImage Image, int C, int Z, int T);
 /// <summary>Gives each page its place (OME-TIFF specification, "The TiffData element").</summary>
 internal static class OmePlanes
 {
+    /// <summary>Honest elements name a page once; the bound ends hostile ones.</summary>
+    public const int MostPerPage = 4;
+
     /// <summary>
     /// A TiffData element covers pages from Ifd on; their places follow DimensionOrder from (C, Z, T) on. Pages that no
     /// element covers have none. An image without any TiffData element has its planes in order.
     /// </summary>
-    public static OmePlane?[] Assign(IReadOnlyList<OmeImage> images, int pages)
+    public static OmePlane?[] Assign(IReadOnlyList<OmeImage> images, IReadOnlyList<Page> pages)
     {
-        OmePlane?[] planes = new OmePlane?[pages];
-
-        // Honest elements name a page once; the bound ends hostile ones.
-        long budget = 4L * pages;
+        OmePlane?[] planes = new OmePlane?[pages.Count];
+        int usual = pages.First(p => p.Layout.Samples > 0).Layout.Samples;
+        long budget = (long)MostPerPage * pages.Count;
         foreach (OmeImage image in images)
         {
-            IEnumerable<OmeTiffData> all = image.TiffData.Count > 0 ? image.TiffData : [new OmeTiffData(0, null, 0, 0, 0, null)];
-            foreach (OmeTiffData data in all.Where(d => d.OtherFile is null))
+            OmeTiffData[] own = [.. (image.TiffData.Count > 0 ? image.TiffData : [new OmeTiffData(0, null, 0, 0, 0, null)]).Where(d => d.OtherFile is null)];
+            int first = own.Length > 0 && own[0].Ifd < pages.Count ? pages[own[0].Ifd].Layout.Samples : 0;
+            image.Samples = first > 0 ? first : usual;
+            foreach (OmeTiffData data in own)
                 Assign(image, data, planes, ref budget);
         }
 
         return planes;
     }
+
+    /// <summary>The planes of each TiffData element, by its place, with their pages' new numbers.</summary>
+    /// <param name="images">The images.</param>
+    /// <param name="numbers">New number of each page of the file; negative for one that is left out.</param>
+    public static ILookup<TextSpan, (int Page, OmePlane Plane)> Renumbered(IReadOnlyList<OmeImage> images, int[] numbers) => images
+        .SelectMany(image => image.TiffData.SelectMany(data => Of(image, data, numbers.Length).Select(p => (data.At, Page: numbers[p.Page], p.Plane))))
+        .Take(MostPerPage * numbers.Length)
+        .Where(p => p.Page >= 0)
+        .ToLookup(p => p.At, p => (p.Page, p.Plane));
 
     private static void Assign(OmeImage image, OmeTiffData data, OmePlane?[] planes, ref long budget)
     {
@@ -101,7 +117,7 @@ internal static class OmePlanes
     /// <summary>The pages that an element covers in a file of so many, with their places.</summary>
     public static IEnumerable<(int Page, OmePlane Plane)> Of(OmeImage image, OmeTiffData data, int pages)
     {
-        (long fast, long middle, long slow) = InOrder(image, image.Size);
+        (long fast, long middle, long slow) = SizeInOrder(image);
         (long f, long m, long s) = InOrder(image, (data.C, data.Z, data.T));
         Int128 total = (Int128)fast * middle * slow;
         Int128 first = f + ((Int128)fast * (m + ((Int128)middle * s)));
@@ -113,14 +129,14 @@ internal static class OmePlanes
             Set(ref at, image.DimensionOrder[2], (int)(place % fast));
             Set(ref at, image.DimensionOrder[3], (int)(place / fast % middle));
             Set(ref at, image.DimensionOrder[4], (int)(place / fast / middle));
-            yield return (data.Ifd + i, new OmePlane(image, at.C, at.Z, at.T));
+            yield return (data.Ifd + i, new OmePlane(image, at.C * image.Samples, at.Z, at.T));
         }
     }
 
     /// <summary>The number of a plane in its image, in DimensionOrder.</summary>
     public static Int128 Number(OmePlane plane)
     {
-        (long fast, long middle, _) = InOrder(plane.Image, plane.Image.Size);
+        (long fast, long middle, _) = SizeInOrder(plane.Image);
         (long f, long m, long s) = InOrder(plane.Image, (plane.C, plane.Z, plane.T));
         return f + ((Int128)fast * (m + ((Int128)middle * s)));
     }
@@ -134,10 +150,11 @@ internal static class OmePlanes
     {
         OmeImage image = plane.Image;
         int channel = plane.C + sample;
+        int element = (long)image.ChannelNames.Count * image.Samples <= image.Size.C ? channel / image.Samples : channel;
         return layout with
         {
             Channel = channel,
-            ChannelName = channel < image.ChannelNames.Count ? image.ChannelNames[channel] : null,
+            ChannelName = element < image.ChannelNames.Count ? image.ChannelNames[element] : null,
             Z = plane.Z,
             Time = plane.T,
             Extension = isNamed ? image.Name : null,
@@ -164,9 +181,13 @@ internal static class OmePlanes
         }
     }
 
+    private static (long Fast, long Middle, long Slow) SizeInOrder(OmeImage image) =>
+        InOrder(image, image.Size with { C = Math.Max(image.Size.C, image.Samples) });
+
+    /// <summary>Sizes or a place in pages, in DimensionOrder: OME-XML counts every sample as a channel.</summary>
     private static (long Fast, long Middle, long Slow) InOrder(OmeImage image, (int C, int Z, int T) by)
     {
-        int Along(char axis) => axis switch { 'C' => by.C, 'Z' => by.Z, _ => by.T };
+        int Along(char axis) => axis switch { 'C' => by.C / image.Samples, 'Z' => by.Z, _ => by.T };
         return (Along(image.DimensionOrder[2]), Along(image.DimensionOrder[3]), Along(image.DimensionOrder[4]));
     }
 }

@@ -14,12 +14,12 @@ internal static class OmeResult
 {
     /// <summary>Makes the text.</summary>
     /// <param name="ome">The source's OME-XML.</param>
-    /// <param name="set">The planes of a set of several files, which are now pages of this one, in order; null for a source of one file.</param>
+    /// <param name="moved">The planes of each TiffData element, by its place, with their pages in the result, ascending; null where every page keeps its number.</param>
     /// <param name="newTypes">New sample types of the images where they change.</param>
     /// <param name="fileName">Name of the result.</param>
     /// <param name="provenance">Provenance.</param>
     /// <param name="ledger">A row per frame.</param>
-    public static string Text(OmeXml ome, IReadOnlyList<OmeSetPlane>? set, Dictionary<OmeImage, SampleType> newTypes, string fileName, ProvenanceRecord provenance, IReadOnlyList<LedgerRow> ledger)
+    public static string Text(OmeXml ome, ILookup<TextSpan, (int Page, OmePlane Plane)>? moved, Dictionary<OmeImage, SampleType> newTypes, string fileName, ProvenanceRecord provenance, IReadOnlyList<LedgerRow> ledger)
     {
         List<(TextSpan, string)> edits = [];
         foreach ((OmeImage image, SampleType type) in newTypes)
@@ -30,11 +30,11 @@ internal static class OmeResult
                 edits.Add((bitsAt, $"{8 * type.Size()}"));
         }
 
-        if (set is not null)
+        if (moved is not null)
         {
             if (ome.RootUuidAt is { } rootAt)
                 edits.Add((rootAt, Uuid(ome.Uuid, provenance.WorkDigest)));
-            edits.AddRange(ome.Images.SelectMany(i => i.TiffData).Select(data => (data.At, TiffData(data, set))));
+            edits.AddRange(ome.Images.SelectMany(i => i.TiffData).Select(data => (data.At, TiffData(data.Name, moved[data.At]))));
         }
         else if (ome.UuidsAt.Count > 0)
         {
@@ -50,24 +50,23 @@ internal static class OmeResult
     }
 
     /// <summary>
-    /// The element of planes that are now pages of this file: without a file, which means this one. Planes of one element
-    /// follow each other in DimensionOrder, and so do the pages; of one whose planes are lost nothing is left.
+    /// Elements for planes whose pages have new numbers, without a file, which means this one: one for each run of planes
+    /// that follow each other in DimensionOrder and so do their pages; none where all are lost.
     /// </summary>
-    private static string TiffData(OmeTiffData data, IReadOnlyList<OmeSetPlane> set)
+    private static string TiffData(string name, IEnumerable<(int Page, OmePlane Plane)> planes)
     {
-        int first = -1, count = 0;
-        for (int f = 0; f < set.Count; f++)
+        StringBuilder text = new();
+        (int Page, OmePlane Plane)[] all = [.. planes];
+        for (int first = 0, end; first < all.Length; first = end)
         {
-            if (set[f].Data.At != data.At)
-                continue;
-            first = first < 0 ? f : first;
-            count++;
+            (int page, OmePlane plane) = all[first];
+            end = first + 1;
+            while (end < all.Length && all[end].Page == page + end - first && OmePlanes.Number(all[end].Plane) == OmePlanes.Number(plane) + end - first)
+                end++;
+            text.Append(CultureInfo.InvariantCulture, $"<{name} FirstC=\"{plane.C}\" FirstT=\"{plane.T}\" FirstZ=\"{plane.Z}\" IFD=\"{page}\" PlaneCount=\"{end - first}\"/>");
         }
 
-        if (count == 0)
-            return "";
-        OmePlane plane = set[first].Plane;
-        return string.Create(CultureInfo.InvariantCulture, $"<{data.Name} FirstC=\"{plane.C}\" FirstT=\"{plane.T}\" FirstZ=\"{plane.Z}\" IFD=\"{first}\" PlaneCount=\"{count}\"/>");
+        return text.ToString();
     }
 
     /// <summary>OME's name of a sample type; it has none for 64-bit integers and 16-bit floats, which keep ours.</summary>

@@ -18,7 +18,6 @@ internal readonly record struct OmeSetPlane(int File, int Page, OmePlane Plane, 
 internal sealed class OmeSet
 {
     private const long LongestText = 64L << 20;
-    private const int MostPerPage = 4; // honest elements name a page once; the bound ends hostile ones
     private readonly TiffFormat format;
     private readonly ReadOptions options;
     private readonly List<string> paths = [];
@@ -130,7 +129,7 @@ internal sealed class OmeSet
                     if (data.Planes is { } promised && covered.Length < promised && (Int128)covered.Length + data.Ifd >= pages)
                         Lose($"{System.IO.Path.GetFileName(path)} has {pages} pages, the set wants {promised} of them from page {data.Ifd} on");
                     named += covered.Length;
-                    if (named > MostPerPage * allPages)
+                    if (named > OmePlanes.MostPerPage * allPages)
                         throw new StackFormatException(Path, "the OME-XML names pages of its files again and again", "get the file again");
                     foreach ((int page, OmePlane plane) in covered)
                     {

@@ -62,7 +62,7 @@ internal static class TiffHealth
             yield return new HealthFinding(true, $"the OME-XML stands in {companion}, which is not beside the file: pages are taken without channel, z and time");
         if (reader.Metadata.Planes is not { } planes)
             yield break;
-        int strangers = planes.Count(p => p is null);
+        int strangers = planes.Where((place, page) => place is null && reader.Index.Pages[page].Layout.Frame is not null).Count();
         if (strangers > 0)
             yield return new HealthFinding(true, string.Create(CultureInfo.InvariantCulture, $"{strangers} pages have no place in the OME-XML: they are taken without channel, z and time"));
         for (int f = 0; f < reader.FrameCount; f++)

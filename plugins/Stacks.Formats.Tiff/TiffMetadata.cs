@@ -19,7 +19,7 @@ internal sealed class TiffMetadata
         Ome = OmeXml.Read(Text(Tag.ImageDescription), Path.GetFileName(file.Path), out string? problem);
         OmeProblem = problem;
         if (Ome is { MetadataFile: null })
-            Planes = OmePlanes.Assign(Ome.Images, index.Pages.Count);
+            Planes = OmePlanes.Assign(Ome.Images, index.Pages);
     }
 
     /// <summary>The OME-XML; null where there is none that can be read.</summary>

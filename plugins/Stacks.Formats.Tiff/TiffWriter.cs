@@ -122,7 +122,7 @@ internal sealed class TiffWriter : IStackWriter
         ];
         if ((set?.Set.Ome ?? source?.Metadata.Ome) is { MetadataFile: null } ome)
         {
-            string text = OmeResult.Text(ome, set?.Set.Planes, newOmeTypes, System.IO.Path.GetFileName(request.Path), provenance, ledger);
+            string text = OmeResult.Text(ome, MovedPlanes(), newOmeTypes, System.IO.Path.GetFileName(request.Path), provenance, ledger);
             first.Add(DirectoryWriter.Text(Tag.ImageDescription, text));
         }
         else
@@ -133,6 +133,18 @@ internal sealed class TiffWriter : IStackWriter
 
         return first;
     }
+
+    /// <summary>The planes of each TiffData element with their pages in the result; null where every page keeps its number.</summary>
+    private ILookup<TextSpan, (int Page, OmePlane Plane)>? MovedPlanes()
+    {
+        if (set is not null)
+            return set.Set.Planes.Select((p, frame) => (p.Data.At, frame, p.Plane)).ToLookup(p => p.At, p => (p.frame, p.Plane));
+        int next = 0;
+        int[] numbers = [.. source!.Index.Pages.Select(p => IsCarried(p) ? next++ : -1)];
+        return next == numbers.Length ? null : OmePlanes.Renumbered(source.Metadata.Ome!.Images, numbers);
+    }
+
+    private bool IsCarried(Page page) => page.Layout.Carried && (request.Carry || page.Layout.Frame is not null);
 
     /// <summary>What of the source is not in the result, a sentence each.</summary>
     private IEnumerable<string> NotCarried()
@@ -171,7 +183,7 @@ internal sealed class TiffWriter : IStackWriter
 
     private void WritePagesOfSource(TiffReader from, List<OutputField> first, IReadOnlyList<LedgerRow> ledger)
     {
-        IReadOnlyList<Page> pages = [.. from.Index.Pages.Where(p => p.Layout.Carried && (request.Carry || p.Layout.Frame is not null))];
+        IReadOnlyList<Page> pages = [.. from.Index.Pages.Where(IsCarried)];
         FileWindow window = new(from.File);
         SegmentTable table = new(from.File);
         Dictionary<long, IEnumerable<OutputField>> copied = [];

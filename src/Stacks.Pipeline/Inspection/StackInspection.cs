@@ -23,7 +23,7 @@ public sealed record StackInspection
     /// <summary>Format id.</summary>
     public required string Format { get; init; }
 
-    /// <summary>Bytes of the file, or of all files of a series.</summary>
+    /// <summary>Bytes of all files of the stack.</summary>
     public required long FileBytes { get; init; }
 
     /// <summary>Science frames.</summary>

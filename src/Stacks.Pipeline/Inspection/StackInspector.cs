@@ -37,7 +37,7 @@ public static class StackInspector
         {
             Path = input.Name,
             Format = reader.Format.Id,
-            FileBytes = input.Files.Sum(file => new FileInfo(file).Length),
+            FileBytes = input.Files.Union(reader.OtherFiles).Sum(file => new FileInfo(file).Length),
             FrameCount = reader.FrameCount,
             Layouts = [.. Enumerable.Range(0, reader.FrameCount)
                 .CountBy(f => reader.Layout(f) with { Z = null, Time = null, Extension = null }).Select(g => (g.Key, g.Value))],

@@ -61,6 +61,35 @@ public sealed class OmeReferenceTests : IDisposable
     }
 
     /// <summary>
+    /// Colour along z and in time as tifffile writes it: three samples a pixel on one page. The levels tell sample, z and time;
+    /// a step on channel 1 raises that sample of every page alone.
+    /// </summary>
+    [NeedsFact(Needs.Tifffile)]
+    public void Samples_of_a_pixel_are_channels_in_every_page()
+    {
+        string source = folder.File("colour.ome.tif");
+        ToolResult written = Tool.Run(Tool.Python, "-c",
+            """
+            import sys, numpy as np, tifffile
+            t, z, y, x, s = np.indices((2, 3, 8, 9, 3))
+            tifffile.imwrite(sys.argv[1], (50 * t + 10 * z + s + 100 * ((x + y) % 2)).astype(np.uint8), photometric='rgb', ome=True, metadata={'axes': 'TZYXS'})
+            """, source);
+        Assert.Equal((0, ""), (written.ExitCode, written.Error));
+        HostRun.Of("[output]\nsamples = \"same\"\n[[step]]\nfilter = \"maximum\"\nchannel = 1\n", source, folder.File("result.ome.tif"));
+
+        ToolResult result = Tool.Run(Tool.Python, "-c",
+            """
+            import sys, numpy as np, tifffile
+            with tifffile.TiffFile(sys.argv[1]) as a, tifffile.TiffFile(sys.argv[2]) as b:
+                before, after = (f.series[0].asarray().transpose([f.series[0].axes.index(c) for c in 'TZSYX']) for f in (a, b))
+            assert before.shape == after.shape == (2, 3, 3, 8, 9), (before.shape, after.shape)
+            assert (before[:, :, [0, 2]] == after[:, :, [0, 2]]).all()
+            assert (after[:, :, 1] == before[:, :, 1].max(axis=(2, 3), keepdims=True)).all()
+            """, source, folder.File("result.ome.tif"));
+        Assert.Equal((0, ""), (result.ExitCode, result.Error));
+    }
+
+    /// <summary>
     /// The elements and attributes that results change or gain, as the published OME schema of 2016-06 describes them
     /// (order of elements, patterns of identifiers, enumerations), written anew here; all others pass.
     /// </summary>
