@@ -9,15 +9,14 @@ using Xunit;
 namespace Stacks.Tests.Samples;
 
 /// <summary>
-/// The README shows what the program does, not what it once did: each block between <c>&lt;!-- NAME: begin --&gt;</c> and
-/// <c>&lt;!-- NAME: end --&gt;</c> equals what is made here from real runs. With STACKS_WRITE_README=1 the blocks are
-/// written instead.
+/// The README shows what the program does, not what it once did: each <see cref="ReadmeBlock"/> equals what is made here
+/// from real runs.
 /// </summary>
 [Collection(SampleRuns.Name)]
 public sealed class ReadmeTests(NightFieldRun field, SmoothNightFieldRun smooth, WanderingCellsRun cells, FourChipsRun chips)
 {
     [Fact]
-    public void TheOutputShownIsReal() => AssertBlock("output", $"```\n{field.Printed.TrimEnd()}\n```");
+    public void TheOutputShownIsReal() => ReadmeBlock.AssertIs("output", $"```\n{field.Printed.TrimEnd()}\n```");
 
     [Fact]
     public void TheFiltersAreThoseInstalled()
@@ -33,7 +32,7 @@ public sealed class ReadmeTests(NightFieldRun field, SmoothNightFieldRun smooth,
                 $"\n| `{filter.GetProperty("id")}` | {filter.GetProperty("kind")} | {(filter.GetProperty("needs_noise").GetBoolean() ? "needed" : "-")} | {Cell(filter.GetProperty("summary"))} | {string.Join(", ", parameters)} |");
         }
 
-        AssertBlock("filters", table.ToString());
+        ReadmeBlock.AssertIs("filters", table.ToString());
     }
 
     [Fact]
@@ -49,7 +48,7 @@ public sealed class ReadmeTests(NightFieldRun field, SmoothNightFieldRun smooth,
         Row("on source light, higher than the source's peak", p => p.OnSource && p.Height > p.SourcePeak && p.IsAboveTenSigma);
         Row("on source light, above it but lower than the peak", p => p.OnSource && p.Height > p.SourceLight && p.Height <= p.SourcePeak && p.IsAboveTenSigma);
         table.Append(CultureInfo.InvariantCulture, $"\n| clean pixels replaced | {Clean(field)} | {Clean(cells)} | {Clean(chips)} |");
-        AssertBlock("removal", table.ToString());
+        ReadmeBlock.AssertIs("removal", table.ToString());
 
         void Row(string label, Func<PlantedPixel, bool> which) =>
             table.Append(CultureInfo.InvariantCulture, $"\n| {label} | {Share(field, which)} | {Share(cells, which)} | {Share(chips, which)} |");
@@ -69,7 +68,7 @@ public sealed class ReadmeTests(NightFieldRun field, SmoothNightFieldRun smooth,
         }
 
         table.Append(CultureInfo.InvariantCulture, $"\n\nNoise in empty patches is at least {Math.Floor(10 * least) / 10:F1} times lower in every frame.");
-        AssertBlock("smoothing", table.ToString());
+        ReadmeBlock.AssertIs("smoothing", table.ToString());
     }
 
     [Fact]
@@ -78,7 +77,7 @@ public sealed class ReadmeTests(NightFieldRun field, SmoothNightFieldRun smooth,
         StringBuilder table = new("| cards | in headers | what becomes of them |\n|---|---|---|");
         foreach (CardChange change in CardChanges.Declared)
             table.Append(CultureInfo.InvariantCulture, $"\n| {string.Join(", ", change.Keywords.Select(k => k.Length == 0 ? "blank cards" : k))} | {change.When} | {change.What} |");
-        AssertBlock("cards", table.ToString());
+        ReadmeBlock.AssertIs("cards", table.ToString());
     }
 
     [Fact]
@@ -106,16 +105,4 @@ public sealed class ReadmeTests(NightFieldRun field, SmoothNightFieldRun smooth,
     }
 
     private static string Cell(JsonElement text) => text.GetString()!.Replace("|", "\\|", StringComparison.Ordinal).Replace("_", "\\_", StringComparison.Ordinal);
-
-    private static void AssertBlock(string name, string made)
-    {
-        string path = Path.Combine(Checkout.Root, "README.md"), begin = $"<!-- {name}: begin -->\n", end = $"\n<!-- {name}: end -->";
-        string readme = File.ReadAllText(path);
-        int from = readme.IndexOf(begin, StringComparison.Ordinal) + begin.Length, to = readme.IndexOf(end, StringComparison.Ordinal);
-        Assert.True(to > from, $"README.md has no block {name}");
-        if (Environment.GetEnvironmentVariable("STACKS_WRITE_README") == "1")
-            File.WriteAllText(path, readme[..from] + made + readme[to..]);
-        else
-            Assert.True(made == readme[from..to], $"block {name} of README.md is not what is made now; STACKS_WRITE_README=1 dotnet test writes it:\n{made}");
-    }
 }
