@@ -1,18 +1,29 @@
 using System.Globalization;
+using System.Numerics;
 using Stacks.Abstractions;
 
 namespace Stacks.Filters.Bilateral;
 
 /// <summary>
-/// y_p = v_p + sum_q w_pq (v_q - v_p) / sum_q w_pq, w_pq = exp(-|p-q|^2 / 2 ss^2) exp(-(T_p - T_q)^2 / 2 k^2), in the
-/// exact form: the sum reaches 4 ss along x and y. With <c>conserve_flux</c>, y_p = v_p + sum_q c_p w_pq c_q (v_q - v_p).
+/// y_p = v_p + sum_q w_pq (v_q - v_p) / sum_q w_pq, w_pq = exp(-|p-q|^2 / 2 ss^2) exp(-(T_p - T_q)^2 / 2 k^2).
+/// With <c>conserve_flux</c>, y_p = v_p + sum_q c_p w_pq c_q (v_q - v_p). The exact form sums pixel by pixel to 4 ss along x
+/// and y; the fast one takes time independent of ss.
 /// </summary>
 public sealed class BilateralFilter : IFilterPlugin
 {
     private const string SpatialSigma = "spatial_sigma";
     private const string RangeSigma = "range_sigma";
     private const string ConserveFlux = "conserve_flux";
+    private const string Method = "method";
+    private const string Tolerance = "tolerance";
     private const string MeanGradientWord = "mean-gradient";
+
+    /// <summary>Least ss of the fast form, samples: below, its grid would have nearly as many nodes as the frame has samples.</summary>
+    private const double LeastFastSigma = 5;
+
+    private const string Auto = "auto";
+    private const string Exact = "exact";
+    private const string Fast = "fast";
 
     /// <inheritdoc/>
     public string Id => "bilateral";
@@ -49,8 +60,8 @@ public sealed class BilateralFilter : IFilterPlugin
             Maximum = 200,
             AllowsPercent = true,
             Meaning = "Standard deviation ss of the Gaussian in space",
-            WhenRaised = "less noise, more flux moved within and around small sources; time grows with its square",
-            WhenLowered = "more noise left, sources truer, faster",
+            WhenRaised = "less noise, more flux moved within and around small sources; the exact form's time grows with its square",
+            WhenLowered = "more noise left, sources truer, the exact form faster",
         },
         new ParameterSpec
         {
@@ -75,6 +86,30 @@ public sealed class BilateralFilter : IFilterPlugin
             WhenRaised = "the total is conserved and sources lose less; six passes instead of one",
             WhenLowered = "the textbook form: a little less noise, and sources lose flux",
         },
+        new ParameterSpec
+        {
+            Name = Method,
+            Kind = ParameterKind.Choice,
+            Default = ParameterValue.Of(Auto),
+            Words = [Auto, Exact, Fast],
+            Meaning = "How the sums are taken: exact, pixel by pixel; fast, in a time independent of spatial_sigma, which must "
+                + "be 5 px or more; auto, fast from there on. A frame whose T spans more than 45,000 range sigmas is "
+                + "filtered exactly in any case",
+            WhenRaised = "fast: within tolerance of the sum over all pixels",
+            WhenLowered = "exact: within 1e-4 range sigmas of it",
+        },
+        new ParameterSpec
+        {
+            Name = Tolerance,
+            Kind = ParameterKind.Number,
+            Unit = "range sigmas",
+            Default = ParameterValue.Of(5e-4),
+            Minimum = 2e-5,
+            Maximum = 0.1,
+            Meaning = "Largest error of the fast form against the sum over all pixels",
+            WhenRaised = "from 5e-4 on coarser levels and grid, faster",
+            WhenLowered = "below 5e-4 finer levels and grid, slower",
+        },
     ];
 
     /// <inheritdoc/>
@@ -97,15 +132,35 @@ public sealed class BilateralFilter : IFilterPlugin
 
         double? rangeSigma = values[RangeSigma].Form == ParameterForm.Word ? null : values.Number(RangeSigma);
         bool conserveFlux = values.Switch(ConserveFlux);
-        SpatialKernel kernel = new(spatialSigma, layout.Width, layout.Height);
+        string method = values.Word(Method);
+        if (method == Fast && spatialSigma < LeastFastSigma)
+        {
+            throw new ParameterException(
+                Method,
+                string.Create(CultureInfo.InvariantCulture, $"fast is for a {SpatialSigma} of {LeastFastSigma} samples and more, here it is {spatialSigma:G4}"),
+                $"give {Auto} or {Exact}");
+        }
+
+        bool fast = method != Exact && spatialSigma >= LeastFastSigma;
+        double tolerance = values.Number(Tolerance);
         ResolvedParameter[] resolved =
         [
             new(SpatialSigma, spatialSigma.ToString("R", CultureInfo.InvariantCulture), "px"),
             new(RangeSigma, values[RangeSigma].ToString(), rangeSigma is null ? "" : "noise sigmas"),
             new(ConserveFlux, values[ConserveFlux].ToString(), ""),
+            new(Method, fast ? Fast : Exact, ""),
+            new(Tolerance, tolerance.ToString("R", CultureInfo.InvariantCulture), "range sigmas"),
         ];
-        return workType == WorkType.Float64
-            ? new BilateralStep<double>(kernel, rangeSigma, conserveFlux, resolved)
-            : new BilateralStep<float>(kernel, rangeSigma, conserveFlux, resolved);
+        return workType == WorkType.Float64 ? Step<double>() : Step<float>();
+
+        IFilterStep<T> Step<T>()
+            where T : unmanaged, IBinaryFloatingPointIeee754<T>
+        {
+            BilateralStep<T> exact = new(new SpatialKernel(spatialSigma, layout.Width, layout.Height), rangeSigma, conserveFlux, resolved);
+            return fast
+                ? new FastBilateralStep<T>(
+                    SpatialGrid.Of(spatialSigma, tolerance, layout.Width, layout.Height), LevelWeights.Of(tolerance), rangeSigma, conserveFlux, exact, resolved)
+                : exact;
+        }
     }
 }

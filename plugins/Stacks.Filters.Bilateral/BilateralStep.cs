@@ -42,7 +42,7 @@ internal sealed class BilateralStep<T>(
         GuidedPlanes planes = new(kernel, context.Scratch);
         ForEachRow(context, (y, _, _) => planes.FillRow(y, input, flags, noise));
 
-        double range = rangeSigma ?? MeanGradient.Of(kernel, planes, context);
+        double range = rangeSigma ?? MeanGradient.Of(input, flags, context);
         context.Report?.Invoke("range_sigma", range);
         double perSquare = Math.Log2(Math.E) / (2 * range * range);
         if (double.IsInfinity(perSquare))
