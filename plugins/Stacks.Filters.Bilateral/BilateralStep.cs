@@ -5,11 +5,11 @@ using Stacks.Imaging;
 namespace Stacks.Filters.Bilateral;
 
 /// <summary>
-/// The bilateral filter on planes of one type; computed in double and rounded once, to the nearest <typeparamref
-/// name="T"/>. The flux-conserving form scales w to c_p w_pq c_q: c starts at 1 / sqrt(row sum), three symmetric rounds
-/// c = sqrt(c / (W c)) (Sinkhorn; Knight, Ruiz and Ucar, SIAM J. Matrix Anal. Appl. 35 (2014) 931) bring the row sums
-/// to 1, and one step c_p *= min(1, 1 / R_p), R_p the off-diagonal row sum, keeps what a pixel retains of itself at
-/// 0 or more. What p gives q, q gets from p: w is symmetric to the bit, so the total changes by rounding alone.
+/// The bilateral filter on planes of one type, computed in that type from differences of samples. The flux-conserving form
+/// scales w to c_p w_pq c_q: c starts at 1 / sqrt(row sum), three symmetric rounds c = sqrt(c / (W c)) (Sinkhorn; Knight,
+/// Ruiz and Ucar, SIAM J. Matrix Anal. Appl. 35 (2014) 931) bring the row sums to 1, and one step c_p *= min(1, 1 / R_p),
+/// R_p the off-diagonal row sum, keeps what a pixel retains of itself at 0 or more. What p gives q, q gets from p: w is
+/// symmetric to the bit, so the total changes by rounding alone.
 /// </summary>
 internal sealed class BilateralStep<T>(
     SpatialKernel kernel, double? rangeSigma, bool conserveFlux, IReadOnlyList<ResolvedParameter> resolved)
@@ -18,10 +18,12 @@ internal sealed class BilateralStep<T>(
 {
     private const int Rounds = 3;
 
-    private delegate void RowWork(int y, Span<double> weights, Span<double> exchanges);
+    private readonly T[] exponents = kernel.Exponents(T.CreateTruncating);
 
-    /// <summary>Lanes to compute with; results are the same bits.</summary>
-    public int Lanes { get; init; } = DoubleLanes.Widest;
+    private delegate void RowWork(int y, Span<T> row);
+
+    /// <summary>Bits of vectors to compute with, 0 for none; results are the same bits.</summary>
+    public int VectorBits { get; init; } = RealLanes.Widest;
 
     /// <summary>Sums that follow one on another: one, or the row sums, the rounds, R and the exchange.</summary>
     private int Passes => conserveFlux ? Rounds + 3 : 1;
@@ -30,7 +32,8 @@ internal sealed class BilateralStep<T>(
     public int? Reach => rangeSigma is null ? null : checked(Passes * Math.Max(kernel.RadiusX, kernel.RadiusY));
 
     /// <inheritdoc/>
-    public long ScratchBytes => (long)kernel.Stride * kernel.Height * sizeof(double) * (conserveFlux ? 4 : 3);
+    public unsafe long ScratchBytes =>
+        ((long)kernel.Stride * kernel.Height * sizeof(T) * (conserveFlux ? 4 : 2)) + ((long)kernel.Height * 4 * sizeof(double)) + (8L * kernel.Stride * sizeof(double));
 
     /// <inheritdoc/>
     public IReadOnlyList<ResolvedParameter> Resolved => resolved;
@@ -39,71 +42,91 @@ internal sealed class BilateralStep<T>(
     public void Apply(Plane<T> input, Plane<SampleFlags> flags, Plane<T> output, FrameContext context)
     {
         NoiseModel noise = context.Noise ?? throw new InvalidOperationException("the bilateral filter needs a noise model");
-        GuidedPlanes planes = new(kernel, context.Scratch);
-        ForEachRow(context, (y, _, _) => planes.FillRow(y, input, flags, noise));
-
         double range = rangeSigma ?? MeanGradient.Of(input, flags, context);
         context.Report?.Invoke("range_sigma", range);
-        double perSquare = Math.Log2(Math.E) / (2 * range * range);
-        if (double.IsInfinity(perSquare))
+        double scale = Math.Sqrt(Math.Log2(Math.E) / 2) / range;
+        if (double.IsInfinity(scale))
         {
             // A frame without gradient: only equal values would be averaged.
             input.Samples.CopyTo(output.Samples);
             return;
         }
 
-        if (conserveFlux)
-            planes = Balance(planes, perSquare, context);
-
-        ForEachRow(context, (y, weights, exchanges) =>
+        GuidedPlanes<T> planes = new(kernel, context.Scratch);
+        double origin = noise.Stabilise(0, 0, GuidedPlanes<T>.Mean(input, flags, context));
+        context.Bands.ForEach(kernel.Height, (first, end) =>
         {
-            DoubleLanes.Run(new PixelSums(kernel, planes, perSquare, y, weights, exchanges), kernel.Width, Lanes);
-            ReadOnlySpan<double> values = planes.Inner(planes.Values, y), factors = planes.Inner(planes.Factors, y);
+            Plane<double> rows = context.Scratch.Rent<double>(kernel.Width, 2);
+            for (int y = first; y < end; y++)
+                planes.FillRow(y, input, flags, noise, origin, scale, rows);
+        });
+
+        Plane<T>? factors = conserveFlux ? Balance(planes, flags, context) : null;
+        ForEachRow(context, (y, changes) =>
+        {
             ReadOnlySpan<T> samples = input.Row(y);
+            ReadOnlySpan<SampleFlags> known = flags.Row(y);
             Span<T> results = output.Row(y);
-            for (int x = 0; x < samples.Length; x++)
+            if (factors is { } c)
             {
-                double change = conserveFlux ? factors[x] * exchanges[x] : exchanges[x] / weights[x];
-                results[x] = factors[x] == 0 ? samples[x] : T.CreateTruncating(values[x] + change);
+                RealLanes.Run<ExchangeSums<T>, T>(new(kernel, exponents, planes, c, y, changes), kernel.Width, VectorBits);
+                ReadOnlySpan<T> own = planes.Inner(c, y);
+                for (int x = 0; x < samples.Length; x++)
+                    changes[x] *= own[x];
             }
+            else
+            {
+                RealLanes.Run<PixelSums<T>, T>(new(kernel, exponents, planes, y, changes), kernel.Width, VectorBits);
+            }
+
+            for (int x = 0; x < samples.Length; x++)
+                results[x] = GuidedPlanes<T>.TakesPart(known[x]) ? samples[x] + changes[x] : samples[x];
         });
     }
 
-    /// <summary>Replaces c = 1 by the c of the flux-conserving form; pixels that take no part keep c = 0.</summary>
-    internal GuidedPlanes Balance(GuidedPlanes planes, double perSquare, FrameContext context)
+    /// <summary>The c of the flux-conserving form, in a padded plane; 0 where pixels take no part.</summary>
+    internal Plane<T> Balance(GuidedPlanes<T> planes, Plane<SampleFlags> flags, FrameContext context)
     {
-        GuidedPlanes next = planes.With(context.Scratch.Rent<double>(kernel.Stride, kernel.Height));
-        next.Factors.Samples.Clear();
-        for (int pass = 0; pass < Rounds + 2; pass++)
+        Plane<T> factors = context.Scratch.Rent<T>(kernel.Stride, kernel.Height), next = context.Scratch.Rent<T>(kernel.Stride, kernel.Height);
+        factors.Samples.Clear();
+        next.Samples.Clear();
+        for (int y = 0; y < kernel.Height; y++)
         {
-            ForEachRow(context, (y, weights, exchanges) =>
-            {
-                DoubleLanes.Run(new PixelSums(kernel, planes, perSquare, y, weights, exchanges), kernel.Width, Lanes);
-                ReadOnlySpan<double> factors = planes.Inner(planes.Factors, y);
-                Span<double> results = planes.Inner(next.Factors, y);
-                for (int x = 0; x < factors.Length; x++)
-                {
-                    double c = factors[x];
-                    if (c == 0)
-                        continue;
-                    results[x] = pass <= Rounds
-                        ? Math.Sqrt(c / weights[x])
-                        : c * Math.Min(1, 1 / (c * (weights[x] - c)));
-                }
-            });
-            (planes, next) = (next, planes);
+            Span<T> row = planes.Inner(factors, y);
+            for (int x = 0; x < row.Length; x++)
+                row[x] = GuidedPlanes<T>.TakesPart(flags[x, y]) ? T.One : T.Zero;
         }
 
-        return planes;
+        for (int pass = 0; pass < Rounds + 2; pass++)
+        {
+            ForEachRow(context, (y, sums) =>
+            {
+                RealLanes.Run<FactorSums<T>, T>(new(kernel, exponents, planes, factors, y, sums), kernel.Width, VectorBits);
+                ReadOnlySpan<T> own = planes.Inner(factors, y);
+                Span<T> results = planes.Inner(next, y);
+                for (int x = 0; x < own.Length; x++)
+                {
+                    T c = own[x];
+                    if (c == T.Zero)
+                        continue;
+                    results[x] = pass <= Rounds
+                        ? T.Sqrt(c / sums[x])
+                        : c / T.Max(T.One, c * (sums[x] - c));
+                }
+            });
+            (factors, next) = (next, factors);
+        }
+
+        return factors;
     }
 
     private void ForEachRow(FrameContext context, RowWork work) => context.Bands.ForEach(kernel.Height, (first, end) =>
     {
-        Plane<double> sums = context.Scratch.Rent<double>(kernel.Width, 2);
+        Plane<T> sums = context.Scratch.Rent<T>(RealLanes.Padded(kernel.Width), 1);
         for (int y = first; y < end; y++)
         {
             context.Cancellation.ThrowIfCancellationRequested();
-            work(y, sums.Row(0), sums.Row(1));
+            work(y, sums.Row(0));
         }
     });
 }

@@ -1,45 +1,57 @@
+using System.Numerics;
+using System.Runtime.CompilerServices;
+using System.Runtime.InteropServices;
 using Stacks.Imaging;
 
 namespace Stacks.Filters.Bilateral;
 
 /// <summary>
-/// The sums over q around every p of row <paramref name="y"/>, with w_pq = 2^-((T_p - T_q)^2 range + place_q):
-/// sum_q w_pq c_q and sum_q w_pq c_q (v_q - v_p). Each runs over q in the kernel's order, in double.
+/// The change of every p of row <paramref name="y"/>: sum_q w_pq (v_q - v_p) / sum_q w_pq, with
+/// w_pq = 2^(place_q - (guide_p - guide_q)^2). Each row of q is summed by itself, left to right; the rows are added from the
+/// first to the last.
 /// </summary>
 /// <param name="kernel">The places q.</param>
-/// <param name="planes">T, v and c.</param>
-/// <param name="range">log2(e) / 2 k^2.</param>
+/// <param name="exponents">log2 of their weights in space.</param>
+/// <param name="planes">Guide and v.</param>
 /// <param name="y">Row of p.</param>
-/// <param name="weights">Receives sum_q w_pq c_q, one for each column.</param>
-/// <param name="exchanges">Receives sum_q w_pq c_q (v_q - v_p), one for each column.</param>
-internal readonly ref struct PixelSums(
-    SpatialKernel kernel, GuidedPlanes planes, double range, int y, Span<double> weights, Span<double> exchanges) : IPixelKernel
+/// <param name="changes">Receives the changes, one for each column in whole vectors.</param>
+internal readonly ref struct PixelSums<T>(SpatialKernel kernel, T[] exponents, GuidedPlanes<T> planes, int y, Span<T> changes) : IRealKernel<T>
+    where T : unmanaged, IBinaryFloatingPointIeee754<T>
 {
-    private readonly ReadOnlySpan<int> offsets = kernel.OffsetsOfRow(y);
-    private readonly ReadOnlySpan<double> places = kernel.ExponentsOfRow(y);
-    private readonly ref double values = ref planes.StartOfRow(planes.Values, y);
-    private readonly ref double guide = ref planes.StartOfRow(planes.Guide, y);
-    private readonly ref double factors = ref planes.StartOfRow(planes.Factors, y);
-    private readonly ref double weights = ref weights[0];
-    private readonly ref double exchanges = ref exchanges[0];
-    private readonly double range = range;
+    private readonly ReadOnlySpan<int> halfWidths = kernel.HalfWidths;
+    private readonly ref T places = ref MemoryMarshal.GetArrayDataReference(exponents);
+    private readonly ref T values = ref planes.StartOfRow(planes.Values, y);
+    private readonly ref T guide = ref planes.StartOfRow(planes.Guide, y);
+    private readonly ref T changes = ref changes[0];
+    private readonly int stride = kernel.Stride;
+    private readonly int radius = kernel.RadiusX;
+    private readonly int first = -Math.Min(y, kernel.RadiusY);
+    private readonly int last = Math.Min(kernel.Height - 1 - y, kernel.RadiusY);
 
     /// <inheritdoc/>
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     public void At<TLanes>(int x)
-        where TLanes : struct, IDoubleLanes<TLanes>
+        where TLanes : struct, IRealLanes<TLanes, T>
     {
-        TLanes ownValue = TLanes.Load(ref values, x), ownGuide = TLanes.Load(ref guide, x), scale = TLanes.All(range);
-        TLanes weight = TLanes.All(0), exchange = TLanes.All(0);
-        for (int i = 0; i < offsets.Length; i++)
+        TLanes ownValue = TLanes.Load(ref values, x), ownGuide = TLanes.Load(ref guide, x);
+        TLanes weight = TLanes.All(0), change = TLanes.All(0);
+        for (int dy = first; dy <= last; dy++)
         {
-            nint q = (nint)x + offsets[i];
-            TLanes apart = TLanes.Load(ref guide, q) - ownGuide;
-            TLanes w = PowerOfTwo.Negative((apart * apart * scale) + TLanes.All(places[i])) * TLanes.Load(ref factors, q);
-            weight += w;
-            exchange += w * (TLanes.Load(ref values, q) - ownValue);
+            int half = halfWidths[Math.Abs(dy)];
+            nint row = ((nint)dy * stride) + x, place = ((nint)Math.Abs(dy) * ((2 * radius) + 1)) + radius;
+            TLanes rowWeight = TLanes.All(0), rowChange = TLanes.All(0);
+            for (nint dx = -half; dx <= half; dx++)
+            {
+                TLanes apart = TLanes.Load(ref guide, row + dx) - ownGuide;
+                TLanes w = PowerOfTwo.Of<TLanes, T>(TLanes.MultiplyAdd(-apart, apart, TLanes.Repeat(ref places, place + dx)));
+                rowWeight += w;
+                rowChange = TLanes.MultiplyAdd(w, TLanes.Load(ref values, row + dx) - ownValue, rowChange);
+            }
+
+            weight += rowWeight;
+            change += rowChange;
         }
 
-        weight.Store(ref weights, x);
-        exchange.Store(ref exchanges, x);
+        (change / weight).Store(ref changes, x);
     }
 }

@@ -1,13 +1,18 @@
+using Stacks.Imaging;
+
 namespace Stacks.Filters.Bilateral;
 
 /// <summary>
-/// The places q of a Gaussian in space around p, row after row and column after column: up to 4 ss away along x and
-/// along y, as far as the frame can hold them.
+/// The places q of a Gaussian in space around p: a disc of radius 4.25 ss, as far as the frame can hold it. What is left
+/// out changes a result by less than 8e-5 range sigmas at edges and borders; a square of half-width 4 ss by up to 5e-5 with a
+/// fifth more places, a disc of radius 4 ss by up to 2.5e-4.
 /// </summary>
 internal sealed class SpatialKernel
 {
-    private readonly int[] offsets;
-    private readonly double[] exponents;
+    private const double Cut = 4.25;
+
+    private readonly int[] halfWidths;
+    private readonly double sigma;
 
     /// <summary>A kernel for frames of one shape.</summary>
     /// <param name="sigma">ss in samples.</param>
@@ -15,24 +20,14 @@ internal sealed class SpatialKernel
     /// <param name="height">Frame height.</param>
     public SpatialKernel(double sigma, int width, int height)
     {
-        double cut = Math.Floor(4 * sigma);
-        RadiusX = (int)Math.Min(cut, width - 1);
-        RadiusY = (int)Math.Min(cut, height - 1);
+        this.sigma = sigma;
+        double radius = Cut * sigma;
+        RadiusX = (int)Math.Min(radius, width - 1);
+        RadiusY = (int)Math.Min(radius, height - 1);
         Width = width;
         Height = height;
-        Stride = checked(width + (2 * RadiusX));
-
-        offsets = new int[((2 * RadiusX) + 1) * ((2 * RadiusY) + 1)];
-        exponents = new double[offsets.Length];
-        int next = 0;
-        for (int dy = -RadiusY; dy <= RadiusY; dy++)
-        {
-            for (int dx = -RadiusX; dx <= RadiusX; dx++, next++)
-            {
-                offsets[next] = (dy * Stride) + dx;
-                exponents[next] = (((double)dx * dx) + ((double)dy * dy)) * Math.Log2(Math.E) / (2 * sigma * sigma);
-            }
-        }
+        Stride = checked(RealLanes.Padded(width) + (2 * RadiusX));
+        halfWidths = [.. Enumerable.Range(0, RadiusY + 1).Select(dy => (int)Math.Min(Math.Sqrt((radius * radius) - ((double)dy * dy)), RadiusX))];
     }
 
     /// <summary>Frame width.</summary>
@@ -47,18 +42,23 @@ internal sealed class SpatialKernel
     /// <summary>Reach along y in samples.</summary>
     public int RadiusY { get; }
 
-    /// <summary>Samples in a row of a padded plane: the frame's width and <see cref="RadiusX"/> on either side.</summary>
+    /// <summary>Samples in a row of a padded plane: the frame's width in whole vectors, and <see cref="RadiusX"/> on either side.</summary>
     public int Stride { get; }
 
-    /// <summary>Distances in a padded plane from p in row <paramref name="y"/> to each q in the frame's rows.</summary>
-    public ReadOnlySpan<int> OffsetsOfRow(int y) => offsets.AsSpan(InFrame(y));
+    /// <summary>Reach along x in the rows dy = 0 ... <see cref="RadiusY"/> away.</summary>
+    public ReadOnlySpan<int> HalfWidths => halfWidths;
 
-    /// <summary>|p-q|^2 log2(e) / 2 ss^2 for the same q: the weight in space is 2 to minus this.</summary>
-    public ReadOnlySpan<double> ExponentsOfRow(int y) => exponents.AsSpan(InFrame(y));
-
-    private Range InFrame(int y)
+    /// <summary>log2 of the weight in space of every place: rows dy = 0 ... RadiusY, columns dx = -RadiusX ... RadiusX.</summary>
+    public T[] Exponents<T>(Func<double, T> rounded)
     {
-        int rowLength = (2 * RadiusX) + 1;
-        return (Math.Max(0, RadiusY - y) * rowLength)..((Math.Min(RadiusY, Height - 1 - y) + RadiusY + 1) * rowLength);
+        int side = (2 * RadiusX) + 1;
+        T[] exponents = new T[side * (RadiusY + 1)];
+        for (int i = 0; i < exponents.Length; i++)
+        {
+            double dx = (i % side) - RadiusX, dy = i / side;
+            exponents[i] = rounded(-((dx * dx) + (dy * dy)) * Math.Log2(Math.E) / (2 * sigma * sigma));
+        }
+
+        return exponents;
     }
 }

@@ -61,10 +61,6 @@ public readonly struct DoubleLanes512(Vector512<double> lanes) : IDoubleLanes<Do
     public static DoubleLanes512 Min(DoubleLanes512 a, DoubleLanes512 b) => new(Vector512.MinNative(a.lanes, b.lanes));
 
     /// <inheritdoc/>
-    public static DoubleLanes512 PowerOfTwo(DoubleLanes512 a) =>
-        new(Vector512.ShiftLeft(Vector512.Create(1023L) - a.lanes.AsInt64(), 52).AsDouble());
-
-    /// <inheritdoc/>
     public static DoubleLanes512 operator +(DoubleLanes512 a, DoubleLanes512 b) => new(a.lanes + b.lanes);
 
     /// <inheritdoc/>
@@ -96,10 +92,6 @@ public readonly struct DoubleLanes256(Vector256<double> lanes) : IDoubleLanes<Do
 
     /// <inheritdoc/>
     public static DoubleLanes256 Min(DoubleLanes256 a, DoubleLanes256 b) => new(Vector256.MinNative(a.lanes, b.lanes));
-
-    /// <inheritdoc/>
-    public static DoubleLanes256 PowerOfTwo(DoubleLanes256 a) =>
-        new(Vector256.ShiftLeft(Vector256.Create(1023L) - a.lanes.AsInt64(), 52).AsDouble());
 
     /// <inheritdoc/>
     public static DoubleLanes256 operator +(DoubleLanes256 a, DoubleLanes256 b) => new(a.lanes + b.lanes);
@@ -135,10 +127,6 @@ public readonly struct DoubleLanes128(Vector128<double> lanes) : IDoubleLanes<Do
     public static DoubleLanes128 Min(DoubleLanes128 a, DoubleLanes128 b) => new(Vector128.MinNative(a.lanes, b.lanes));
 
     /// <inheritdoc/>
-    public static DoubleLanes128 PowerOfTwo(DoubleLanes128 a) =>
-        new(Vector128.ShiftLeft(Vector128.Create(1023L) - a.lanes.AsInt64(), 52).AsDouble());
-
-    /// <inheritdoc/>
     public static DoubleLanes128 operator +(DoubleLanes128 a, DoubleLanes128 b) => new(a.lanes + b.lanes);
 
     /// <inheritdoc/>
@@ -170,10 +158,6 @@ public readonly struct DoubleLane(double lane) : IDoubleLanes<DoubleLane>
 
     /// <inheritdoc/>
     public static DoubleLane Min(DoubleLane a, DoubleLane b) => new(a.lane < b.lane ? a.lane : b.lane);
-
-    /// <inheritdoc/>
-    public static DoubleLane PowerOfTwo(DoubleLane a) =>
-        new(BitConverter.Int64BitsToDouble((1023L - BitConverter.DoubleToInt64Bits(a.lane)) << 52));
 
     /// <inheritdoc/>
     public static DoubleLane operator +(DoubleLane a, DoubleLane b) => new(a.lane + b.lane);

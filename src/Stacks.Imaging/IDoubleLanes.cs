@@ -23,9 +23,6 @@ public interface IDoubleLanes<TSelf>
     /// <summary>The smaller in every lane; no lane is NaN.</summary>
     static abstract TSelf Min(TSelf a, TSelf b);
 
-    /// <summary>2^-n for the whole number n, -1000 to 1000, that stands in the low bits of each lane's significand.</summary>
-    static abstract TSelf PowerOfTwo(TSelf a);
-
     /// <summary>Sum.</summary>
     static abstract TSelf operator +(TSelf a, TSelf b);
 

@@ -8,6 +8,7 @@ using Stacks.Benchmarks;
 [
     ("formats", FormatRatios.Of),
     ("local-statistics", LocalStatisticsRatios.Of),
+    ("bilateral", BilateralRatios.Of),
 ];
 
 switch (args)

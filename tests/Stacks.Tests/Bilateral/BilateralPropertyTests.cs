@@ -12,11 +12,11 @@ public class BilateralPropertyTests
 {
     private static readonly LinearNoise Camera = new(0.5, 400, 20);
 
-    private static BilateralStep<double> Step(Plane<double> plane, bool conserve, int? lanes = null)
+    private static BilateralStep<double> Step(Plane<double> plane, bool conserve, int? vectors = null)
     {
         SpatialKernel kernel = new(1.3, plane.Width, plane.Height);
-        return lanes is { } count
-            ? new BilateralStep<double>(kernel, 2.5, conserve, []) { Lanes = count }
+        return vectors is { } bits
+            ? new BilateralStep<double>(kernel, 2.5, conserve, []) { VectorBits = bits }
             : new BilateralStep<double>(kernel, 2.5, conserve, []);
     }
 
@@ -51,9 +51,9 @@ public class BilateralPropertyTests
     public void Bands_and_vector_widths_do_not_change_a_bit(PositiveInt width, PositiveInt height, int seed, bool conserve)
     {
         SmoothingScene scene = new(1 + (width.Get % 40), 1 + (height.Get % 40), seed, missing: 0.1, saturated: 0.05);
-        double[] scalar = FilterRun.Smooth(Step(scene.Plane, conserve, lanes: 1), scene.Plane, scene.Flags, Camera).Samples.ToArray();
-        foreach (int lanes in new[] { 2, 4, 8 })
-            Xunit.Assert.Equal(scalar, FilterRun.Smooth(Step(scene.Plane, conserve, lanes), scene.Plane, scene.Flags, Camera).Samples.ToArray());
+        double[] scalar = FilterRun.Smooth(Step(scene.Plane, conserve, vectors: 0), scene.Plane, scene.Flags, Camera).Samples.ToArray();
+        foreach (int bits in new[] { 128, 256, 512 })
+            Xunit.Assert.Equal(scalar, FilterRun.Smooth(Step(scene.Plane, conserve, bits), scene.Plane, scene.Flags, Camera).Samples.ToArray());
         foreach (int bands in new[] { 2, 5 })
             Xunit.Assert.Equal(scalar, FilterRun.Smooth(Step(scene.Plane, conserve), scene.Plane, scene.Flags, Camera, bands).Samples.ToArray());
     }
