@@ -42,7 +42,7 @@ internal readonly ref struct FactorSums<T>(SpatialKernel kernel, T[] exponents, 
             for (nint dx = -half; dx <= half; dx++)
             {
                 TLanes apart = TLanes.Load(ref guide, row + dx) - ownGuide;
-                TLanes w = PowerOfTwo.Of<TLanes, T>(TLanes.MultiplyAdd(-apart, apart, TLanes.Repeat(ref places, place + dx)));
+                TLanes w = PowerOfTwo.Of<TLanes, T>(TLanes.MultiplySubtract(apart, apart, TLanes.Repeat(ref places, place + dx)));
                 rowSum = TLanes.MultiplyAdd(w, TLanes.Load(ref factors, row + dx), rowSum);
             }
 

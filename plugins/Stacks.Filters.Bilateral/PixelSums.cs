@@ -43,7 +43,7 @@ internal readonly ref struct PixelSums<T>(SpatialKernel kernel, T[] exponents, G
             for (nint dx = -half; dx <= half; dx++)
             {
                 TLanes apart = TLanes.Load(ref guide, row + dx) - ownGuide;
-                TLanes w = PowerOfTwo.Of<TLanes, T>(TLanes.MultiplyAdd(-apart, apart, TLanes.Repeat(ref places, place + dx)));
+                TLanes w = PowerOfTwo.Of<TLanes, T>(TLanes.MultiplySubtract(apart, apart, TLanes.Repeat(ref places, place + dx)));
                 rowWeight += w;
                 rowChange = TLanes.MultiplyAdd(w, TLanes.Load(ref values, row + dx) - ownValue, rowChange);
             }

@@ -31,6 +31,9 @@ public interface IRealLanes<TSelf, T>
     /// <summary>a b + c, rounded once.</summary>
     static abstract TSelf MultiplyAdd(TSelf a, TSelf b, TSelf c);
 
+    /// <summary>c - a b, rounded once.</summary>
+    static abstract TSelf MultiplySubtract(TSelf a, TSelf b, TSelf c);
+
     /// <summary>The nearest whole number, ties to even.</summary>
     static abstract TSelf Round(TSelf a);
 
@@ -45,9 +48,6 @@ public interface IRealLanes<TSelf, T>
 
     /// <summary>Difference.</summary>
     static abstract TSelf operator -(TSelf a, TSelf b);
-
-    /// <summary>The same with the other sign.</summary>
-    static abstract TSelf operator -(TSelf a);
 
     /// <summary>Product.</summary>
     static abstract TSelf operator *(TSelf a, TSelf b);

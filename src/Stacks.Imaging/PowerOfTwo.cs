@@ -1,3 +1,5 @@
+using System.Runtime.CompilerServices;
+
 namespace Stacks.Imaging;
 
 /// <summary>
@@ -23,6 +25,7 @@ public static class PowerOfTwo
     /// remainder (ln 2 / 2)^8 / 8! makes a relative error below 8e-9.
     /// </summary>
     /// <param name="u">0 or less in every lane.</param>
+    [MethodImpl(MethodImplOptions.AggressiveInlining)]
     public static TLanes Of<TLanes, T>(TLanes u)
         where TLanes : struct, IRealLanes<TLanes, T>
         where T : unmanaged

@@ -90,6 +90,11 @@ internal readonly struct RealLanes512<T>(Vector512<T> lanes) : IRealLanes<RealLa
         : new(Vector512.FusedMultiplyAdd(a.lanes.AsDouble(), b.lanes.AsDouble(), c.lanes.AsDouble()).As<double, T>());
 
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
+    public static RealLanes512<T> MultiplySubtract(RealLanes512<T> a, RealLanes512<T> b, RealLanes512<T> c) => typeof(T) == typeof(float)
+        ? new(Vector512.FusedMultiplyAdd(-a.lanes.AsSingle(), b.lanes.AsSingle(), c.lanes.AsSingle()).As<float, T>())
+        : new(Vector512.FusedMultiplyAdd(-a.lanes.AsDouble(), b.lanes.AsDouble(), c.lanes.AsDouble()).As<double, T>());
+
+    [MethodImpl(MethodImplOptions.AggressiveInlining)]
     public static RealLanes512<T> Round(RealLanes512<T> a) => typeof(T) == typeof(float)
         ? new(Vector512.Round(a.lanes.AsSingle()).As<float, T>())
         : new(Vector512.Round(a.lanes.AsDouble()).As<double, T>());
@@ -117,9 +122,6 @@ internal readonly struct RealLanes512<T>(Vector512<T> lanes) : IRealLanes<RealLa
 
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
     public static RealLanes512<T> operator -(RealLanes512<T> a, RealLanes512<T> b) => new(a.lanes - b.lanes);
-
-    [MethodImpl(MethodImplOptions.AggressiveInlining)]
-    public static RealLanes512<T> operator -(RealLanes512<T> a) => new(-a.lanes);
 
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
     public static RealLanes512<T> operator *(RealLanes512<T> a, RealLanes512<T> b) => new(a.lanes * b.lanes);
@@ -159,6 +161,11 @@ internal readonly struct RealLanes256<T>(Vector256<T> lanes) : IRealLanes<RealLa
         : new(Vector256.FusedMultiplyAdd(a.lanes.AsDouble(), b.lanes.AsDouble(), c.lanes.AsDouble()).As<double, T>());
 
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
+    public static RealLanes256<T> MultiplySubtract(RealLanes256<T> a, RealLanes256<T> b, RealLanes256<T> c) => typeof(T) == typeof(float)
+        ? new(Vector256.FusedMultiplyAdd(-a.lanes.AsSingle(), b.lanes.AsSingle(), c.lanes.AsSingle()).As<float, T>())
+        : new(Vector256.FusedMultiplyAdd(-a.lanes.AsDouble(), b.lanes.AsDouble(), c.lanes.AsDouble()).As<double, T>());
+
+    [MethodImpl(MethodImplOptions.AggressiveInlining)]
     public static RealLanes256<T> Round(RealLanes256<T> a) => typeof(T) == typeof(float)
         ? new(Vector256.Round(a.lanes.AsSingle()).As<float, T>())
         : new(Vector256.Round(a.lanes.AsDouble()).As<double, T>());
@@ -179,9 +186,6 @@ internal readonly struct RealLanes256<T>(Vector256<T> lanes) : IRealLanes<RealLa
 
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
     public static RealLanes256<T> operator -(RealLanes256<T> a, RealLanes256<T> b) => new(a.lanes - b.lanes);
-
-    [MethodImpl(MethodImplOptions.AggressiveInlining)]
-    public static RealLanes256<T> operator -(RealLanes256<T> a) => new(-a.lanes);
 
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
     public static RealLanes256<T> operator *(RealLanes256<T> a, RealLanes256<T> b) => new(a.lanes * b.lanes);
@@ -221,6 +225,11 @@ internal readonly struct RealLanes128<T>(Vector128<T> lanes) : IRealLanes<RealLa
         : new(Vector128.FusedMultiplyAdd(a.lanes.AsDouble(), b.lanes.AsDouble(), c.lanes.AsDouble()).As<double, T>());
 
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
+    public static RealLanes128<T> MultiplySubtract(RealLanes128<T> a, RealLanes128<T> b, RealLanes128<T> c) => typeof(T) == typeof(float)
+        ? new(Vector128.FusedMultiplyAdd(-a.lanes.AsSingle(), b.lanes.AsSingle(), c.lanes.AsSingle()).As<float, T>())
+        : new(Vector128.FusedMultiplyAdd(-a.lanes.AsDouble(), b.lanes.AsDouble(), c.lanes.AsDouble()).As<double, T>());
+
+    [MethodImpl(MethodImplOptions.AggressiveInlining)]
     public static RealLanes128<T> Round(RealLanes128<T> a) => typeof(T) == typeof(float)
         ? new(Vector128.Round(a.lanes.AsSingle()).As<float, T>())
         : new(Vector128.Round(a.lanes.AsDouble()).As<double, T>());
@@ -241,9 +250,6 @@ internal readonly struct RealLanes128<T>(Vector128<T> lanes) : IRealLanes<RealLa
 
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
     public static RealLanes128<T> operator -(RealLanes128<T> a, RealLanes128<T> b) => new(a.lanes - b.lanes);
-
-    [MethodImpl(MethodImplOptions.AggressiveInlining)]
-    public static RealLanes128<T> operator -(RealLanes128<T> a) => new(-a.lanes);
 
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
     public static RealLanes128<T> operator *(RealLanes128<T> a, RealLanes128<T> b) => new(a.lanes * b.lanes);
@@ -279,6 +285,9 @@ internal readonly struct RealLane<T>(T lane) : IRealLanes<RealLane<T>, T>
     public static RealLane<T> MultiplyAdd(RealLane<T> a, RealLane<T> b, RealLane<T> c) => new(T.FusedMultiplyAdd(a.lane, b.lane, c.lane));
 
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
+    public static RealLane<T> MultiplySubtract(RealLane<T> a, RealLane<T> b, RealLane<T> c) => new(T.FusedMultiplyAdd(-a.lane, b.lane, c.lane));
+
+    [MethodImpl(MethodImplOptions.AggressiveInlining)]
     public static RealLane<T> Round(RealLane<T> a) => new(T.Round(a.lane));
 
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
@@ -292,9 +301,6 @@ internal readonly struct RealLane<T>(T lane) : IRealLanes<RealLane<T>, T>
 
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
     public static RealLane<T> operator -(RealLane<T> a, RealLane<T> b) => new(a.lane - b.lane);
-
-    [MethodImpl(MethodImplOptions.AggressiveInlining)]
-    public static RealLane<T> operator -(RealLane<T> a) => new(-a.lane);
 
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
     public static RealLane<T> operator *(RealLane<T> a, RealLane<T> b) => new(a.lane * b.lane);
