@@ -6,8 +6,8 @@ namespace Stacks.Filters.Bilateral;
 
 /// <summary>
 /// y_p = v_p + sum_q w_pq (v_q - v_p) / sum_q w_pq, w_pq = exp(-|p-q|^2 / 2 ss^2) exp(-(T_p - T_q)^2 / 2 k^2).
-/// With <c>conserve_flux</c>, y_p = v_p + sum_q c_p w_pq c_q (v_q - v_p). The exact form sums pixel by pixel to 4 ss along x
-/// and y; the fast one takes time independent of ss.
+/// With <c>conserve_flux</c>, y_p = v_p + sum_q c_p w_pq c_q (v_q - v_p). The exact form sums pixel by pixel over a disc
+/// of radius 4.5 ss; the fast one takes time independent of ss.
 /// </summary>
 public sealed class BilateralFilter : IFilterPlugin
 {

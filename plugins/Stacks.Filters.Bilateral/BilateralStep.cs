@@ -80,7 +80,7 @@ internal sealed class BilateralStep<T>(
             }
 
             for (int x = 0; x < samples.Length; x++)
-                results[x] = GuidedPlanes<T>.TakesPart(known[x]) ? samples[x] + changes[x] : samples[x];
+                results[x] = GuideLevels.TakesPart(known[x]) ? samples[x] + changes[x] : samples[x];
         });
     }
 
@@ -94,7 +94,7 @@ internal sealed class BilateralStep<T>(
         {
             Span<T> row = planes.Inner(factors, y);
             for (int x = 0; x < row.Length; x++)
-                row[x] = GuidedPlanes<T>.TakesPart(flags[x, y]) ? T.One : T.Zero;
+                row[x] = GuideLevels.TakesPart(flags[x, y]) ? T.One : T.Zero;
         }
 
         for (int pass = 0; pass < Rounds + 2; pass++)

@@ -33,9 +33,6 @@ internal readonly struct GuidedPlanes<T>
     /// <summary>T times the scale.</summary>
     public Plane<T> Guide { get; }
 
-    /// <summary>True where a pixel takes part in sums.</summary>
-    public static bool TakesPart(SampleFlags flags) => (flags & (SampleFlags.Missing | SampleFlags.Saturated)) == 0;
-
     /// <summary>The guide of a pixel that takes no part.</summary>
     private static T Apart => T.CreateTruncating(1e18);
 
@@ -52,7 +49,7 @@ internal readonly struct GuidedPlanes<T>
                 double sum = 0, count = 0;
                 for (int x = 0; x < samples.Length; x++)
                 {
-                    if (TakesPart(known[x]))
+                    if (GuideLevels.TakesPart(known[x]))
                     {
                         sum += double.CreateTruncating(samples[x]);
                         count++;
@@ -89,13 +86,13 @@ internal readonly struct GuidedPlanes<T>
         ReadOnlySpan<SampleFlags> known = flags.Row(y);
         Span<double> wide = rows.Row(0), stabilised = rows.Row(1);
         for (int x = 0; x < samples.Length; x++)
-            wide[x] = TakesPart(known[x]) ? double.CreateTruncating(samples[x]) : 0;
+            wide[x] = GuideLevels.TakesPart(known[x]) ? double.CreateTruncating(samples[x]) : 0;
         noise.StabiliseByRow(y, wide, stabilised);
 
         Span<T> values = Inner(Values, y), guide = Inner(Guide, y);
         for (int x = 0; x < samples.Length; x++)
         {
-            if (!TakesPart(known[x]))
+            if (!GuideLevels.TakesPart(known[x]))
                 continue;
             values[x] = samples[x];
             guide[x] = T.CreateTruncating(Math.Clamp((stabilised[x] - origin) * scale, -Largest, Largest));
