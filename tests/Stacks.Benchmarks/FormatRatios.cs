@@ -71,7 +71,7 @@ internal static class FormatRatios
     private sealed record ThreadMemory(ByteBuffer Raw, ByteBuffer Stored);
 
     /// <summary>Encodes a group of frames on so many threads, then writes them in order, group after group.</summary>
-    private static void Write(IStackFormat format, IStackReader source, string path, OutputCompression compression, int threads)
+    internal static void Write(IStackFormat format, IStackReader source, string path, OutputCompression compression, int threads)
     {
         using IStackWriter writer = format.Create(new WriteRequest
         {
