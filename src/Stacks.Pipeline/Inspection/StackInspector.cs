@@ -72,6 +72,7 @@ public static class StackInspector
         values.Load(samples, stored, layout.Transform);
         slot.Scratch.Reset();
         (double minimum, double maximum) = values.Extremes(flags);
+        FlagCounts counts = FlagScan.CountAll(flags);
         return new FrameFigures(
             frame,
             layout,
@@ -79,7 +80,7 @@ public static class StackInspector
             values.Median(flags, slot.Scratch),
             maximum,
             values.MeasureNoise(planes.Flags, layout.Lattice, layout.QuantisationStep, null, slot.Scratch).Sigma,
-            FlagScan.Count(flags, SampleFlags.Missing),
-            FlagScan.Count(flags, SampleFlags.Saturated));
+            counts.Missing,
+            counts.Saturated);
     }
 }

@@ -15,36 +15,56 @@ internal static class FlagScan
         return found < 0 ? -1 : start + found;
     }
 
-    /// <summary>Samples that have a flag.</summary>
-    public static long Count(ReadOnlySpan<SampleFlags> flags, SampleFlags flag)
+    /// <summary>Counts of every flag, in one pass.</summary>
+    public static FlagCounts CountAll(ReadOnlySpan<SampleFlags> flags)
     {
-        ReadOnlySpan<ulong> words = MemoryMarshal.Cast<SampleFlags, ulong>(flags);
-        ulong mask = 0x0101010101010101UL * (byte)flag;
-        long count = 0;
-        foreach (ulong word in words)
-            count += BitOperations.PopCount(word & mask);
-        for (int i = words.Length * sizeof(ulong); i < flags.Length; i++)
-            count += (flags[i] & flag) != 0 ? 1 : 0;
-        return count;
+        FlagCounts counts = default;
+        ReadOnlySpan<byte> bytes = MemoryMarshal.AsBytes(flags);
+        int i = 0;
+        for (; i <= bytes.Length - Vector<byte>.Count; i += Vector<byte>.Count)
+        {
+            Vector<byte> vector = new(bytes[i..]);
+            if (vector == Vector<byte>.Zero)
+                continue;
+            foreach (ulong word in MemoryMarshal.Cast<byte, ulong>(bytes.Slice(i, Vector<byte>.Count)))
+                counts = counts.Add(word);
+        }
+
+        for (; i < bytes.Length; i++)
+            counts = counts.Add(bytes[i]);
+        return counts;
     }
 
     /// <summary>True when any sample has a flag.</summary>
-    public static bool Any(ReadOnlySpan<SampleFlags> flags, SampleFlags flag)
+    public static bool Any(ReadOnlySpan<SampleFlags> flags, SampleFlags flag) => NextOf(flags, 0, flag) >= 0;
+
+    /// <summary>Index of the first sample from <paramref name="start"/> on that has a flag; -1 when there is none.</summary>
+    private static int NextOf(ReadOnlySpan<SampleFlags> flags, int start, SampleFlags flag)
     {
-        ReadOnlySpan<ulong> words = MemoryMarshal.Cast<SampleFlags, ulong>(flags);
-        ulong mask = 0x0101010101010101UL * (byte)flag;
-        foreach (ulong word in words)
+        ReadOnlySpan<byte> bytes = MemoryMarshal.AsBytes(flags);
+        Vector<byte> wanted = new((byte)flag);
+        while (start <= bytes.Length - Vector<byte>.Count && (new Vector<byte>(bytes[start..]) & wanted) == Vector<byte>.Zero)
+            start += Vector<byte>.Count;
+        for (; start < bytes.Length; start++)
         {
-            if ((word & mask) != 0)
-                return true;
+            if ((bytes[start] & (byte)flag) != 0)
+                return start;
         }
 
-        for (int i = words.Length * sizeof(ulong); i < flags.Length; i++)
-        {
-            if ((flags[i] & flag) != 0)
-                return true;
-        }
-
-        return false;
+        return -1;
     }
+}
+
+/// <summary>Samples that have a flag, for every flag.</summary>
+internal readonly record struct FlagCounts(long Missing, long Saturated, long ReplacedBright, long ReplacedDark, long KeptAsSource)
+{
+    /// <summary>The counts with those of eight samples more.</summary>
+    public FlagCounts Add(ulong flags) => new(
+        Missing + Count(flags, SampleFlags.Missing),
+        Saturated + Count(flags, SampleFlags.Saturated),
+        ReplacedBright + Count(flags, SampleFlags.ReplacedBright),
+        ReplacedDark + Count(flags, SampleFlags.ReplacedDark),
+        KeptAsSource + Count(flags, SampleFlags.KeptAsSource));
+
+    private static int Count(ulong flags, SampleFlags flag) => BitOperations.PopCount(flags & (0x0101010101010101UL * (byte)flag));
 }

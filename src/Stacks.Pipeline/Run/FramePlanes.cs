@@ -11,6 +11,7 @@ internal sealed class FramePlanes
     private readonly WorkPlane?[] planes = new WorkPlane?[4];
     private SampleFlags[] flags = [];
     private SampleFlags[] history = [];
+    private bool hasHistory;
     private int width;
     private int height;
 
@@ -20,19 +21,13 @@ internal sealed class FramePlanes
     /// <summary>The values as the last step left them.</summary>
     public WorkPlane Current { get; private set; } = WorkPlane.Of(WorkType.UInt16);
 
-    /// <summary>Fits flags and history to a shape, all of them None.</summary>
+    /// <summary>Fits flags to a shape, all of them None, without history.</summary>
     public void Shape(int width, int height)
     {
         (this.width, this.height) = (width, height);
         int length = checked(width * height);
-        if (flags.Length < length)
-        {
-            flags = new SampleFlags[length];
-            history = new SampleFlags[length];
-        }
-
-        Array.Clear(flags, 0, length);
-        Array.Clear(history, 0, length);
+        Clear(ref flags, length);
+        hasHistory = false;
     }
 
     /// <summary>Makes the plane of a work type current and gives it the frame's shape; its values are undefined.</summary>
@@ -60,6 +55,12 @@ internal sealed class FramePlanes
     public void MoveDecisionsToHistory()
     {
         Span<SampleFlags> now = Flags.Samples;
+        if (!hasHistory && FlagScan.NextDecision(now, 0) >= 0)
+        {
+            Clear(ref history, now.Length);
+            hasHistory = true;
+        }
+
         for (int i = FlagScan.NextDecision(now, 0); i >= 0; i = FlagScan.NextDecision(now, i + 1))
         {
             history[i] |= now[i];
@@ -70,6 +71,8 @@ internal sealed class FramePlanes
     /// <summary>Joins the history to the flags.</summary>
     public void MergeHistory()
     {
+        if (!hasHistory)
+            return;
         Span<ulong> now = MemoryMarshal.Cast<SampleFlags, ulong>(Flags.Samples);
         ReadOnlySpan<ulong> past = MemoryMarshal.Cast<SampleFlags, ulong>(history.AsSpan(0, width * height));
         for (int i = 0; i < now.Length; i++)
@@ -96,6 +99,14 @@ internal sealed class FramePlanes
     {
         Mosaic.Join(Flags, lattice, offsetX, offsetY, whole.Flags);
         Current.Join(whole.Start(Current.Type), lattice, offsetX, offsetY);
+    }
+
+    private static void Clear(ref SampleFlags[] buffer, int length)
+    {
+        if (buffer.Length < length)
+            buffer = new SampleFlags[length];
+        else
+            Array.Clear(buffer, 0, length);
     }
 
     private WorkPlane PlaneOf(WorkType type) => planes[(int)type] ??= WorkPlane.Of(type);

@@ -33,13 +33,12 @@ internal sealed class FrameProcessor(
         masks.Mark(slot.Frame, layout, flags);
         plan.Reader.MarkQuality(slot.Frame, frame.Flags);
         source.Mark(stored, layout, flags);
-        long missing = FlagScan.Count(flags, SampleFlags.Missing);
-        long saturated = FlagScan.Count(flags, SampleFlags.Saturated);
+        FlagCounts found = FlagScan.CountAll(flags);
         SampleSum fluxIn = source.Sum(stored, flags, layout.Width);
 
         // Values and their noise.
         frame.Start(layout.WorkType).Load(source, stored, layout.Transform);
-        double level = frame.Current.Median(flags, slot.Scratch);
+        double level = frame.Current.Median(found.Missing > 0 ? flags : [], slot.Scratch);
         FrameNoise? noise = noiseModels.For(slot.Frame, layout);
         NoiseMeasurement before = frame.Current.MeasureNoise(
             frame.Flags, layout.Lattice, layout.QuantisationStep, noise?.Model, slot.Scratch);
@@ -59,7 +58,8 @@ internal sealed class FrameProcessor(
         StoredSamples target = StoredSamples.Of(prepared.OutputType);
         bool sameType = prepared.OutputType == layout.SampleType;
         ValueTransform transform = sameType ? layout.Transform : ValueTransform.Identity;
-        bool changed = prepared.IsRewritten || FlagScan.Any(flags, SampleFlags.Replaced);
+        FlagCounts decided = FlagScan.CountAll(flags);
+        bool changed = prepared.IsRewritten || decided.ReplacedBright + decided.ReplacedDark > 0;
         bool held;
         Span<byte> result = stored;
         if (!prepared.IsRewritten)
@@ -91,11 +91,11 @@ internal sealed class FrameProcessor(
             Level = level,
             NoiseBefore = before.Sigma,
             NoiseAfter = after.Sigma,
-            ReplacedBright = FlagScan.Count(flags, SampleFlags.ReplacedBright),
-            ReplacedDark = FlagScan.Count(flags, SampleFlags.ReplacedDark),
-            KeptAsSource = FlagScan.Count(flags, SampleFlags.KeptAsSource),
-            Saturated = saturated,
-            Missing = missing,
+            ReplacedBright = decided.ReplacedBright,
+            ReplacedDark = decided.ReplacedDark,
+            KeptAsSource = decided.KeptAsSource,
+            Saturated = found.Saturated,
+            Missing = found.Missing,
             FluxIn = fluxIn.Value(layout.Transform),
             FluxRemoved = sameType ? fluxIn.Less(fluxOut, transform) : fluxIn.Value(layout.Transform) - fluxOut.Value(transform),
             FluxOut = fluxOut.Value(transform),

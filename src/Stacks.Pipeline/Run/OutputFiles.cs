@@ -52,14 +52,21 @@ internal static class OutputFiles
             throw InTheWay(there, there.EndsWith(PartialEnding, StringComparison.Ordinal) ? "is left from a run that did not end" : "exists already");
     }
 
-    /// <summary>Syncs the partial files, renames them, and syncs their folder.</summary>
+    /// <summary>Syncs partial files.</summary>
+    /// <param name="files">The files, written and closed.</param>
+    /// <param name="sync">fsync of a path; see <see cref="Durable.Sync"/>.</param>
+    public static void Sync(IReadOnlyList<OutputFile> files, Action<string> sync)
+    {
+        foreach (OutputFile file in files)
+            sync(file.Partial);
+    }
+
+    /// <summary>Renames partial files that have been synced, and syncs their folder.</summary>
     /// <param name="files">In the order in which they get their final names.</param>
     /// <param name="overwrite">Replace what has a final name already.</param>
     /// <param name="sync">fsync of a path; see <see cref="Durable.Sync"/>.</param>
     public static void Commit(IReadOnlyList<OutputFile> files, bool overwrite, Action<string> sync)
     {
-        foreach (OutputFile file in files)
-            sync(file.Partial);
         foreach (OutputFile file in files)
         {
             try

@@ -22,11 +22,11 @@ public static class StackRun
     internal static RunResult Execute(RunPlan plan, IProgress<RunProgress>? progress, Action<string> sync, CancellationToken cancellation)
     {
         using CancellationTokenSource ended = CancellationTokenSource.CreateLinkedTokenSource(cancellation);
-        Task<string> sourceDigest = Task.Run(() => Digests.OfFile(plan.Reader.Path, ended.Token), ended.Token);
-        Task<NamedDigest[]> otherDigests = Task.Run(
-            () => plan.Reader.OtherFiles.Select(f => new NamedDigest(Path.GetFileName(f), Digests.OfFile(f, ended.Token))).ToArray(), ended.Token);
-        Task<string[]> damage = Task.Run(
-            () => plan.Reader.CheckHealth(ended.Token).Where(f => f.IsProblem).Select(f => $"the source is damaged: {f.Text}").ToArray(), ended.Token);
+        Task<string> sourceDigest = Beside(() => Digests.OfFile(plan.Reader.Path, ended.Token));
+        Task<NamedDigest[]> otherDigests = Beside(
+            () => plan.Reader.OtherFiles.Select(f => new NamedDigest(Path.GetFileName(f), Digests.OfFile(f, ended.Token))).ToArray());
+        Task<string[]> damage = Beside(
+            () => plan.Reader.CheckHealth(ended.Token).Where(f => f.IsProblem).Select(f => $"the source is damaged: {f.Text}").ToArray());
         try
         {
             FrameMasks masks = new(plan, cancellation);
@@ -68,8 +68,11 @@ public static class StackRun
                 writer.Complete(account.Provenance, account.Ledger);
             }
 
+            Task synced = Beside(() => OutputFiles.Sync(written, sync)); // the disk writes while the digests are taken
             NamedDigest[] made = [.. written.Select(f => new NamedDigest(Path.GetFileName(f.Final), Digests.OfFile(f.Partial, cancellation)))];
             Sidecar.Write(sidecar.Partial, account.Provenance, plan, otherDigests.GetAwaiter().GetResult(), masks.Files, made);
+            OutputFiles.Sync([sidecar], sync);
+            synced.GetAwaiter().GetResult();
             cancellation.ThrowIfCancellationRequested();
             OutputFiles.Commit([sidecar, .. written.Reverse()], plan.Overwrite, sync);
             OutputFiles.RemoveStale(Path.GetDirectoryName(Path.GetFullPath(plan.OutputPath))!, replaced, made);
@@ -85,6 +88,11 @@ public static class StackRun
             Ledger = account.Ledger,
         };
     }
+
+    /// <summary>Work on a thread of its own: the pool's threads are for frames.</summary>
+    private static Task<T> Beside<T>(Func<T> work) => Task.Factory.StartNew(work, CancellationToken.None, TaskCreationOptions.LongRunning, TaskScheduler.Default);
+
+    private static Task Beside(Action work) => Task.Factory.StartNew(work, CancellationToken.None, TaskCreationOptions.LongRunning, TaskScheduler.Default);
 
     private static WriteRequest RequestOf(RunPlan plan, DateTimeOffset created) => new()
     {
