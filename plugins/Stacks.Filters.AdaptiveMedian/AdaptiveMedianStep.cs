@@ -11,15 +11,14 @@ namespace Stacks.Filters.AdaptiveMedian;
 internal sealed class AdaptiveMedianStep<T>(FrameLayout layout, ImpulseRules rules) : IFilterStep<T>
     where T : unmanaged, INumber<T>
 {
-    private readonly WindowQuantiles[] quartiles =
-        [.. from side in Enumerable.Range(1, rules.LargestWindow / 2) select new WindowQuantiles((2 * side) + 1, 0.25, 0.5, 0.75)];
+    private readonly QuartileKernels kernels = new(rules.LargestWindow);
 
     /// <inheritdoc/>
     public int? Reach => Replacement<T>.LargestRadius + (rules.LargestWindow / 2);
 
     /// <inheritdoc/>
     public long ScratchBytes =>
-        Windows.ScratchBytes<T>(layout.Width, layout.Height, rules.LargestWindow / 2) + layout.Length;
+        ReflectedRows.ScratchBytes(layout.Width, layout.Height, rules.LargestWindow / 2) + layout.Length + kernels.ScratchBytes<T>();
 
     /// <inheritdoc/>
     public IReadOnlyList<ResolvedParameter> Resolved => rules.Resolved;
@@ -28,16 +27,11 @@ internal sealed class AdaptiveMedianStep<T>(FrameLayout layout, ImpulseRules rul
     public void Apply(Plane<T> input, Plane<SampleFlags> flags, Plane<T> output, FrameContext context)
     {
         NoiseModel noise = context.Noise ?? throw new InvalidOperationException("adaptive-median needs a noise model");
-        Windows<T> windows = Windows.Of(
-            input, flags, ImpulseSearch<T>.TakeNoPart, rules.LargestWindow / 2, context.Scratch, context.Bands);
+        ReflectedRows<T> rows = new(input, flags, ImpulseSearch<T>.TakeNoPart, rules.LargestWindow / 2, context.Scratch);
         Plane<SampleFlags> judged = context.Scratch.Rent<SampleFlags>(input.Width, input.Height);
 
-        ImpulseSearch<T> search = new(rules, quartiles, windows, noise);
-        context.Bands.ForEach(input.Height, (first, end) =>
-        {
-            context.Cancellation.ThrowIfCancellationRequested();
-            search.Judge(flags, judged, first, end);
-        });
+        ImpulseSearch<T> search = new(rules, kernels, rows, noise);
+        context.Bands.ForEach(input.Height, (first, end) => search.Judge(flags, judged, first, end, context));
 
         context.Bands.ForEach(input.Height, (first, end) =>
         {

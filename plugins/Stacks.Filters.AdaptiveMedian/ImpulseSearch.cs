@@ -1,5 +1,4 @@
 using System.Numerics;
-using System.Runtime.CompilerServices;
 using Stacks.Abstractions;
 using Stacks.Imaging;
 
@@ -13,13 +12,12 @@ namespace Stacks.Filters.AdaptiveMedian;
 /// that <see cref="OpticalBound"/> allows over Q1 of window K is kept as a source; Q1 of a small window inside a star
 /// would be star light itself.
 /// </summary>
-internal sealed class ImpulseSearch<T>(ImpulseRules rules, WindowQuantiles[] quartiles, Windows<T> windows, NoiseModel noise)
+internal sealed class ImpulseSearch<T>(ImpulseRules rules, QuartileKernels kernels, ReflectedRows<T> rows, NoiseModel noise)
     where T : unmanaged, INumber<T>
 {
     /// <summary>Samples that no window sees: nothing was measured there.</summary>
     public const SampleFlags TakeNoPart = SampleFlags.Missing | SampleFlags.Defect;
 
-    private const int Block = 64;
     private const int LeastCount = 3;
 
     private readonly double[] normalRange =
@@ -27,116 +25,76 @@ internal sealed class ImpulseSearch<T>(ImpulseRules rules, WindowQuantiles[] qua
             select n < LeastCount ? double.NaN : NormalOrderStatistics.InterquartileRange(n)];
 
     /// <summary>Writes, for rows [first, end), each pixel's given flags together with the judgement.</summary>
-    [SkipLocalsInit]
-    public void Judge(Plane<SampleFlags> given, Plane<SampleFlags> judged, int first, int end)
+    public void Judge(Plane<SampleFlags> given, Plane<SampleFlags> judged, int first, int end, FrameContext context)
     {
-        Span<T> results = stackalloc T[quartiles.Length * 3 * Block];
-        Span<int> counts = stackalloc int[quartiles.Length * Block];
-        for (int y = first; y < end; y++)
+        QuartileWindows<T> windows = new(kernels, rows, first, end, context.Scratch);
+        ClearPixels<T> clearPixels = new(rules, noise);
+        while (windows.Advance())
         {
-            given.Row(y).CopyTo(judged.Row(y));
-            for (int x = 0; x < windows.Width; x += Block)
-                JudgeBlock(judged.Row(y).Slice(x, Math.Min(Block, windows.Width - x)), x, y, results, counts);
-        }
-    }
-
-    private void JudgeBlock(Span<SampleFlags> judged, int x, int y, Span<T> results, Span<int> counts)
-    {
-        int length = judged.Length;
-        ulong open = 0;
-        for (int i = 0; i < length; i++)
-        {
-            if ((judged[i] & (TakeNoPart | SampleFlags.Saturated)) == 0)
-                open |= 1UL << i;
-        }
-
-        int computed = 0;
-        for (int w = 0; w < quartiles.Length && open != 0; w++)
-        {
-            quartiles[w].Row(windows, y, x, x + length, results.Slice(w * 3 * Block, 3 * length), counts.Slice(w * Block, length));
-            computed = w + 1;
-            for (ulong rest = open; rest != 0; rest &= rest - 1)
+            context.Cancellation.ThrowIfCancellationRequested();
+            for (int row = 0; row < windows.Height; row++)
             {
-                int i = BitOperations.TrailingZeroCount(rest);
-                Quartiles window = At(results, counts, w, i, length);
-                if (window.Count < LeastCount)
-                    continue;
-                double sigma = noise.Sigma(x + i, y, window.Median);
-                if (Math.Max(0, window.Range - rules.QuantisationStep) > rules.Trust * normalRange[window.Count] * sigma)
-                    continue;
-                open &= ~(1UL << i);
-                judged[i] |= Decide(x + i, y, window.Median, rules.Threshold * sigma, rules.Dark);
+                int y = windows.Y + row;
+                Span<SampleFlags> results = judged.Row(y).Slice(windows.X, windows.Width);
+                given.Row(y).Slice(windows.X, windows.Width).CopyTo(results);
+                ReadOnlySpan<ulong> clear = clearPixels.Find(windows, row, rows.Plain(windows.X, y, windows.Width));
+                for (int i = 0; i < results.Length; i++)
+                {
+                    ulong rest = ~clear[i / ClearPixels<T>.Answer] >> (i % ClearPixels<T>.Answer);
+                    if (rest == 0)
+                    {
+                        i |= ClearPixels<T>.Answer - 1;
+                        continue;
+                    }
+
+                    i += BitOperations.TrailingZeroCount(rest);
+                    if (i < results.Length && (results[i] & (TakeNoPart | SampleFlags.Saturated)) == 0)
+                        results[i] |= Judge(windows, i, row);
+                }
             }
         }
-
-        for (; open != 0; open &= open - 1)
-        {
-            int i = BitOperations.TrailingZeroCount(open);
-            judged[i] |= WithoutTrust(x + i, y, results, counts, i, length);
-        }
-
-        if (rules.PsfFwhm > 0)
-            KeepSources(judged, x, y, results, counts, computed);
     }
 
-    private SampleFlags WithoutTrust(int x, int y, Span<T> results, Span<int> counts, int i, int length)
+    private SampleFlags Judge(QuartileWindows<T> windows, int i, int row)
     {
-        Quartiles last = At(results, counts, quartiles.Length - 1, i, length);
-        if (last.Count < LeastCount)
-            return SampleFlags.None;
-        if (rules.PsfFwhm == 0)
+        int x = windows.X + i, y = windows.Y + row;
+        SampleFlags judgement = FirstTrusted(windows, i, row);
+        if (judgement != SampleFlags.ReplacedBright || rules.PsfFwhm == 0)
+            return judgement;
+        double sigma = noise.Sigma(x, y, double.CreateTruncating(rows[x, y]));
+        double level = windows.At(windows.Count - 1, i, row).Lower;
+        return OpticalBound.Allows(rows, x, y, rules.PsfFwhm, level, sigma) ? SampleFlags.KeptAsSource : judgement;
+    }
+
+    private SampleFlags FirstTrusted(QuartileWindows<T> windows, int i, int row)
+    {
+        int x = windows.X + i, y = windows.Y + row;
+        Quartiles smallest = default, last = default;
+        for (int w = 0; w < windows.Count; w++)
         {
-            double spread = Math.Max(last.Range / normalRange[last.Count], noise.Sigma(x, y, last.Median));
-            return Decide(x, y, last.Median, rules.Threshold * spread, rules.Dark);
+            last = windows.At(w, i, row);
+            if (last.Count < LeastCount)
+                continue;
+            if (smallest.Count == 0)
+                smallest = last;
+            double sigma = noise.Sigma(x, y, last.Median);
+            if (Math.Max(0, last.Range - rules.QuantisationStep) <= rules.Trust * normalRange[last.Count] * sigma)
+                return Decide(x, y, last.Median, rules.Threshold * sigma, rules.Dark);
         }
 
-        int smallest = 0;
-        while (counts[(smallest * Block) + i] < LeastCount)
-            smallest++;
-        double median = At(results, counts, smallest, i, length).Median;
-        return Decide(x, y, median, rules.Threshold * noise.Sigma(x, y, median), dark: false);
+        if (last.Count < LeastCount)
+            return SampleFlags.None;
+        if (rules.PsfFwhm > 0)
+            return Decide(x, y, smallest.Median, rules.Threshold * noise.Sigma(x, y, smallest.Median), dark: false);
+        double spread = Math.Max(last.Range / normalRange[last.Count], noise.Sigma(x, y, last.Median));
+        return Decide(x, y, last.Median, rules.Threshold * spread, rules.Dark);
     }
 
     private SampleFlags Decide(int x, int y, double median, double limit, bool dark)
     {
-        double excess = double.CreateTruncating(windows[x, y]) - median;
+        double excess = double.CreateTruncating(rows[x, y]) - median;
         if (dark && -excess > limit)
             return SampleFlags.ReplacedDark;
         return rules.Bright && excess > limit ? SampleFlags.ReplacedBright : SampleFlags.None;
-    }
-
-    // Takes back what the optics could have made; the largest window is computed here where no pixel of the block needed it.
-    private void KeepSources(Span<SampleFlags> judged, int x, int y, Span<T> results, Span<int> counts, int computed)
-    {
-        int length = judged.Length, last = quartiles.Length - 1;
-        for (int i = 0; i < length; i++)
-        {
-            if ((judged[i] & SampleFlags.ReplacedBright) == 0)
-                continue;
-            if (computed <= last)
-            {
-                quartiles[last].Row(windows, y, x, x + length, results.Slice(last * 3 * Block, 3 * length), counts.Slice(last * Block, length));
-                computed = last + 1;
-            }
-
-            double sigma = noise.Sigma(x + i, y, double.CreateTruncating(windows[x + i, y]));
-            if (OpticalBound.Allows(windows, x + i, y, rules.PsfFwhm, At(results, counts, last, i, length).Lower, sigma))
-                judged[i] ^= SampleFlags.ReplacedBright | SampleFlags.KeptAsSource;
-        }
-    }
-
-    private static Quartiles At(Span<T> results, Span<int> counts, int window, int i, int length)
-    {
-        int place = (window * 3 * Block) + i;
-        return new Quartiles(
-            counts[(window * Block) + i],
-            double.CreateTruncating(results[place]),
-            double.CreateTruncating(results[place + length]),
-            double.CreateTruncating(results[place + (2 * length)]));
-    }
-
-    private readonly record struct Quartiles(int Count, double Lower, double Median, double Upper)
-    {
-        public double Range => Upper - Lower;
     }
 }

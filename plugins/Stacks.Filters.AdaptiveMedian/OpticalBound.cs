@@ -20,31 +20,31 @@ internal static class OpticalBound
     private static ReadOnlySpan<sbyte> AxisY => [0, 1, 1, -1];
 
     /// <summary>True when the pixel may be a source.</summary>
-    /// <param name="windows">The frame.</param>
+    /// <param name="rows">The frame.</param>
     /// <param name="x">Column.</param>
     /// <param name="y">Row.</param>
     /// <param name="fwhm">f, samples, above 0.</param>
     /// <param name="level">b.</param>
     /// <param name="sigma">sigma(v).</param>
-    public static bool Allows<T>(Windows<T> windows, int x, int y, double fwhm, double level, double sigma)
+    public static bool Allows<T>(ReflectedRows<T> rows, int x, int y, double fwhm, double level, double sigma)
         where T : unmanaged, INumber<T>
     {
-        double height = double.CreateTruncating(windows[x, y]) - level;
+        double height = double.CreateTruncating(rows[x, y]) - level;
         for (int axis = 0; axis < AxisX.Length; axis++)
         {
             int dx = AxisX[axis], dy = AxisY[axis];
             double fallOff = Math.Exp(-4 * Math.Log(2) * ((dx * dx) + (dy * dy)) / (fwhm * fwhm));
             double least = level + (Share * fallOff * height) - (Slack * sigma);
-            if (!Supports(windows, x + dx, y + dy, least) && !Supports(windows, x - dx, y - dy, least))
+            if (!Supports(rows, x + dx, y + dy, least) && !Supports(rows, x - dx, y - dy, least))
                 return false;
         }
 
         return true;
     }
 
-    private static bool Supports<T>(Windows<T> windows, int x, int y, double least)
+    private static bool Supports<T>(ReflectedRows<T> rows, int x, int y, double least)
         where T : unmanaged, INumber<T> =>
-        (uint)x >= (uint)windows.Width || (uint)y >= (uint)windows.Height
-        || !windows.TakesPart(x, y)
-        || double.CreateTruncating(windows[x, y]) >= least;
+        (uint)x >= (uint)rows.Width || (uint)y >= (uint)rows.Height
+        || !rows.TakesPart(x, y)
+        || double.CreateTruncating(rows[x, y]) >= least;
 }

@@ -11,8 +11,6 @@ namespace Stacks.Filters.LocalStatistics;
 internal sealed class RobustFormStep<T> : IFilterStep<T>
     where T : unmanaged, IBinaryFloatingPointIeee754<T>
 {
-    private const int Block = 64;
-
     private readonly FrameLayout layout;
     private readonly WindowQuantiles quartiles;
     private readonly double[] unitRange;
@@ -30,7 +28,8 @@ internal sealed class RobustFormStep<T> : IFilterStep<T>
     public int? Reach => quartiles.Side / 2;
 
     /// <inheritdoc/>
-    public long ScratchBytes => Windows.ScratchBytes<T>(layout.Width, layout.Height, quartiles.Side / 2);
+    public long ScratchBytes => 
+        ReflectedRows.ScratchBytes(layout.Width, layout.Height, quartiles.Side / 2) + quartiles.ScratchBytes<T>();
 
     /// <inheritdoc/>
     public IReadOnlyList<ResolvedParameter> Resolved { get; }
@@ -39,30 +38,29 @@ internal sealed class RobustFormStep<T> : IFilterStep<T>
     public void Apply(Plane<T> input, Plane<SampleFlags> flags, Plane<T> output, FrameContext context)
     {
         NoiseModel noise = context.Noise ?? throw new InvalidOperationException("local statistics need a noise model");
-        Windows<T> windows = Windows.Of(input, flags, SampleFlags.Missing, quartiles.Side / 2, context.Scratch, context.Bands);
+        ReflectedRows<T> rows = new(input, flags, SampleFlags.Missing, quartiles.Side / 2, context.Scratch);
         context.Bands.ForEach(input.Height, (first, end) =>
         {
-            Span<T> found = stackalloc T[3 * Block];
-            Span<int> counts = stackalloc int[Block];
-            for (int y = first; y < end; y++)
+            QuantileBlocks<T> blocks = quartiles.Over(rows, first, end, context.Scratch);
+            while (blocks.Advance())
             {
                 context.Cancellation.ThrowIfCancellationRequested();
-                for (int start = 0; start < input.Width; start += Block)
+                for (int row = 0; row < blocks.Height; row++)
                 {
-                    int length = Math.Min(Block, input.Width - start);
-                    quartiles.Row(windows, y, start, start + length, found, counts);
-                    for (int i = 0; i < length; i++)
+                    int y = blocks.Y + row;
+                    ReadOnlySpan<T> lower = blocks.Values(0, row), middle = blocks.Values(1, row), upper = blocks.Values(2, row);
+                    ReadOnlySpan<ushort> counts = blocks.Counts(row);
+                    for (int i = 0; i < blocks.Width; i++)
                     {
-                        int x = start + i;
+                        int x = blocks.X + i;
                         if ((flags[x, y] & (SampleFlags.Missing | SampleFlags.Saturated)) != 0 || counts[i] < Shrinkage.LeastCount)
                         {
                             output[x, y] = input[x, y];
                             continue;
                         }
 
-                        double median = double.CreateTruncating(found[length + i]);
-                        double range = double.CreateTruncating(found[(2 * length) + i]) - double.CreateTruncating(found[i]);
-                        double sigma = range / unitRange[counts[i]];
+                        double median = double.CreateTruncating(middle[i]);
+                        double sigma = (double.CreateTruncating(upper[i]) - double.CreateTruncating(lower[i])) / unitRange[counts[i]];
                         output[x, y] = T.CreateTruncating(Shrinkage.Of(
                             double.CreateTruncating(input[x, y]), median, noise.Variance(x, y, median), sigma * sigma));
                     }

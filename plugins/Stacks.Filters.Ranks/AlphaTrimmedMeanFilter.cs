@@ -58,7 +58,7 @@ public sealed class AlphaTrimmedMeanFilter : RankFilter
         private readonly int side;
         private readonly double trim;
         private readonly int kept;
-        private readonly RankNetwork middle;
+        private readonly WindowRanks middle;
 
         public Step(FrameLayout layout, int side, double trim, IReadOnlyList<ResolvedParameter> resolved)
             : base(layout, side, SampleFlags.Missing | SampleFlags.Saturated, resolved)
@@ -67,29 +67,37 @@ public sealed class AlphaTrimmedMeanFilter : RankFilter
             this.trim = trim;
             int cut = Cut(side * side, trim);
             kept = (side * side) - (2 * cut);
-            middle = new RankNetwork(side * side, [.. Enumerable.Range(cut + 1, kept)]);
+            middle = new WindowRanks(side, [.. Enumerable.Range(cut + 1, kept)]);
         }
 
-        [SkipLocalsInit]
-        protected override void Compute(Windows<T> windows, int y, int first, Span<T> result, Span<int> counts)
-        {
-            // As many pixels at once as the widest vector holds: all kept ranks of more would not fit the stack.
-            int pixels = 64 / Unsafe.SizeOf<T>(), radius = side / 2;
-            Span<T> ranks = stackalloc T[side * side * pixels];
-            for (int from = 0; from < result.Length; from += pixels)
-            {
-                int x = first + from, length = Math.Min(pixels, result.Length - from);
-                WindowRanks.Row(windows, side, middle, y, x, x + length, ranks);
-                for (int i = 0; i < length; i++)
-                {
-                    result[from + i] = Rounding.ToSample<T>(Mean<T>(ranks[i..(((kept - 1) * length) + i + 1)], length));
-                    counts[from + i] = side * side;
-                }
+        protected override long BandScratchBytes => 0;
 
-                for (int i = 0; i < length && !windows.AllTakePart; i++)
+        [SkipLocalsInit]
+        protected override void Compute(ReflectedRows<T> rows, int first, int end, FramePart<T> frame, FrameContext context)
+        {
+            int pixels = WindowRanks.Pixels<T>(), radius = side / 2;
+            Span<T> ranks = stackalloc T[side * side * pixels];
+            Span<ushort> counts = stackalloc ushort[pixels];
+            for (int y = first; y < end; y++)
+            {
+                context.Cancellation.ThrowIfCancellationRequested();
+                for (int x = 0; x < rows.Width; x += pixels)
                 {
-                    if (!windows.AllTakePartIn(x + i - radius, x + i + radius + 1, y - radius, y + radius + 1))
-                        counts[from + i] = Partial(ranks[..windows.Gather(x + i, y, radius, ranks)], ref result[from + i]);
+                    Span<T> results = frame.Output.Row(y)[x..Math.Min(x + pixels, rows.Width)];
+                    middle.At(rows, x, y, ranks);
+                    for (int i = 0; i < results.Length; i++)
+                    {
+                        results[i] = Rounding.ToSample<T>(Mean<T>(ranks[i..(((kept - 1) * pixels) + i + 1)], pixels));
+                        counts[i] = (ushort)(side * side);
+                    }
+
+                    for (int i = 0; i < results.Length && !rows.AllTakePart; i++)
+                    {
+                        if (!rows.AllTakePartIn(x + i, y, radius))
+                            counts[i] = (ushort)Partial(ranks[..rows.Gather(x + i, y, radius, ranks)], ref results[i]);
+                    }
+
+                    Keep(frame, x, y, counts[..results.Length], rows.AllTakePart);
                 }
             }
         }

@@ -23,18 +23,14 @@ public sealed class MidpointFilter : RankFilter
         new Step<T>(layout, values.Integer(Window.Name), Resolve(values));
 
     private sealed class Step<T>(FrameLayout layout, int side, IReadOnlyList<ResolvedParameter> resolved)
-        : WindowStep<T>(layout, side, SampleFlags.Missing | SampleFlags.Saturated, resolved)
+        : QuantileStep<T>(layout, new WindowQuantiles(side, 0, 1), SampleFlags.Missing | SampleFlags.Saturated, resolved)
         where T : unmanaged, INumber<T>
     {
-        private readonly WindowQuantiles ends = new(side, 0, 1);
-
-        protected override void Compute(Windows<T> windows, int y, int first, Span<T> result, Span<int> counts)
+        protected override void Take(QuantileBlocks<T> blocks, int row, Span<T> results)
         {
-            int length = result.Length;
-            Span<T> found = stackalloc T[2 * Block];
-            ends.Row(windows, y, first, first + length, found, counts);
-            for (int i = 0; i < length; i++)
-                result[i] = Quantile.Between(found[i], found[length + i], 0.5);
+            ReadOnlySpan<T> lowest = blocks.Values(0, row), highest = blocks.Values(1, row);
+            for (int i = 0; i < results.Length; i++)
+                results[i] = Quantile.Between(lowest[i], highest[i], 0.5);
         }
     }
 }

@@ -15,49 +15,53 @@ namespace Stacks.Filters.Ranks;
 internal abstract class WindowStep<T>(FrameLayout layout, int side, SampleFlags without, IReadOnlyList<ResolvedParameter> resolved) : IFilterStep<T>
     where T : unmanaged, INumber<T>
 {
-    /// <summary>Most pixels that <see cref="Compute"/> is asked for at once.</summary>
-    protected const int Block = 64;
-
-    private const int LeastCount = 3;
+    private const ushort LeastCount = 3;
+    private const SampleFlags Untouched = SampleFlags.Missing | SampleFlags.Saturated;
 
     /// <inheritdoc/>
     public int? Reach => side / 2;
 
     /// <inheritdoc/>
-    public long ScratchBytes => Windows.ScratchBytes<T>(layout.Width, layout.Height, side / 2);
+    public long ScratchBytes => ReflectedRows.ScratchBytes(layout.Width, layout.Height, side / 2) + BandScratchBytes;
 
     /// <inheritdoc/>
     public IReadOnlyList<ResolvedParameter> Resolved => resolved;
 
-    /// <summary>Computes pixels [first, first + result.Length) of row <paramref name="y"/>.</summary>
-    /// <param name="windows">The frame.</param>
-    /// <param name="y">Row.</param>
-    /// <param name="first">First column.</param>
-    /// <param name="result">Receives the values, at most <see cref="Block"/>.</param>
-    /// <param name="counts">Receives how many samples took part; below 3 the value does not count.</param>
-    protected abstract void Compute(Windows<T> windows, int y, int first, Span<T> result, Span<int> counts);
+    /// <summary>Bytes that <see cref="Compute"/> rents.</summary>
+    protected abstract long BandScratchBytes { get; }
+
+    /// <summary>Computes the pixels of rows [first, end), and leaves to <see cref="Keep"/> those that must not change.</summary>
+    protected abstract void Compute(ReflectedRows<T> rows, int first, int end, FramePart<T> frame, FrameContext context);
 
     /// <inheritdoc/>
     public void Apply(Plane<T> input, Plane<SampleFlags> flags, Plane<T> output, FrameContext context)
     {
-        Windows<T> windows = Windows.Of(input, flags, without, side / 2, context.Scratch, context.Bands);
+        ReflectedRows<T> rows = new(input, flags, without, side / 2, context.Scratch);
         context.Bands.ForEach(input.Height, (first, end) =>
+            Compute(rows, first, end, new FramePart<T>(input, flags, output), context));
+    }
+
+    /// <summary>Puts back the pixels from column <paramref name="x"/> of row <paramref name="y"/> on that stay as they are.</summary>
+    /// <param name="frame">The frame.</param>
+    /// <param name="x">First column.</param>
+    /// <param name="y">Row.</param>
+    /// <param name="counts">Samples that took part in each window.</param>
+    /// <param name="full">What each of them is when no sample of the frame is without part.</param>
+    protected static void Keep(FramePart<T> frame, int x, int y, ReadOnlySpan<ushort> counts, bool full)
+    {
+        ReadOnlySpan<SampleFlags> known = frame.Flags.Row(y).Slice(x, counts.Length);
+        if (full && !FlagSearch.Any(known, Untouched))
+            return;
+        ReadOnlySpan<T> samples = frame.Input.Row(y).Slice(x, counts.Length);
+        Span<T> results = frame.Output.Row(y).Slice(x, counts.Length);
+        for (int i = 0; i < counts.Length; i++)
         {
-            Span<int> counts = stackalloc int[Block];
-            for (int y = first; y < end; y++)
-            {
-                context.Cancellation.ThrowIfCancellationRequested();
-                for (int x = 0; x < input.Width; x += Block)
-                {
-                    Span<T> result = output.Row(y)[x..Math.Min(x + Block, input.Width)];
-                    Compute(windows, y, x, result, counts[..result.Length]);
-                    for (int i = 0; i < result.Length; i++)
-                    {
-                        if (counts[i] < LeastCount || (flags[x + i, y] & (SampleFlags.Missing | SampleFlags.Saturated)) != 0)
-                            result[i] = input[x + i, y];
-                    }
-                }
-            }
-        });
+            if (counts[i] < LeastCount || (known[i] & Untouched) != 0)
+                results[i] = samples[i];
+        }
     }
 }
+
+/// <summary>The planes of a frame.</summary>
+internal readonly record struct FramePart<T>(Plane<T> Input, Plane<SampleFlags> Flags, Plane<T> Output)
+    where T : unmanaged;

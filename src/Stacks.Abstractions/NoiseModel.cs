@@ -21,14 +21,15 @@ public abstract class NoiseModel
     /// <summary>The least variance the model gives anywhere: a bound for quick tests, in value units squared.</summary>
     public abstract double LeastVariance { get; }
 
-    /// <summary><see cref="Variance"/> for every sample of a row.</summary>
+    /// <summary><see cref="Variance"/> for samples of a row.</summary>
+    /// <param name="x">Column in the frame of the first.</param>
     /// <param name="y">Row in the frame.</param>
-    /// <param name="levels">Levels, one for each column from 0.</param>
+    /// <param name="levels">Levels, one for each column from <paramref name="x"/>.</param>
     /// <param name="variances">Receives as many variances.</param>
-    public virtual void VarianceByRow(int y, ReadOnlySpan<float> levels, Span<float> variances)
+    public virtual void VarianceByRow(int x, int y, ReadOnlySpan<float> levels, Span<float> variances)
     {
-        for (int x = 0; x < levels.Length; x++)
-            variances[x] = (float)Variance(x, y, levels[x]);
+        for (int i = 0; i < levels.Length; i++)
+            variances[i] = (float)Variance(x + i, y, levels[i]);
     }
 
     /// <summary><see cref="Stabilise"/> for every sample of a row.</summary>

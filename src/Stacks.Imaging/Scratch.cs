@@ -4,7 +4,7 @@ namespace Stacks.Imaging;
 
 /// <summary>
 /// Pooled scratch for one worker: the same sequence of rents gets the same buffers, so nothing is allocated after the
-/// first frame. <see cref="Reset"/> takes all of them back at once.
+/// first frame. Buffers never move in memory. <see cref="Reset"/> takes all of them back at once.
 /// </summary>
 public sealed class Scratch : IScratch
 {
@@ -34,7 +34,7 @@ public sealed class Scratch : IScratch
             }
             else
             {
-                buffer = GC.AllocateUninitializedArray<T>(length);
+                buffer = GC.AllocateUninitializedArray<T>(length, pinned: true);
             }
 
             rented.Add(buffer);

@@ -63,7 +63,7 @@ public static class DifferenceNoise
         for (int y = stepY; y < values.Height - stepY; y += stride)
         {
             Respond(values, flags, stepX, stepY, y, row, levels);
-            model?.VarianceByRow(y, levels, variances);
+            model?.VarianceByRow(0, y, levels, variances);
             for (int x = stepX; x < width - stepX; x++)
             {
                 if (!double.IsFinite(row[x]))

@@ -46,22 +46,13 @@ public class ScipyRankTests
         Random random = new(1995);
         Plane<T> plane = FilterRun.PlaneOf(Width, Height, (_, _) => sample(random));
         Plane<SampleFlags> flags = new(new SampleFlags[plane.Length], Width, Height);
-        Windows<T> windows = Windows.Of(plane, flags, SampleFlags.Missing, 7, new Scratch(), SerialBands.Instance);
+        ReflectedRows<T> rows = new(plane, flags, SampleFlags.Missing, 7, new Scratch());
         File.WriteAllBytes(folder.File("input"), MemoryMarshal.AsBytes(plane.Samples).ToArray());
         for (int side = 3; side <= 15; side += 2)
         {
             int n = side * side;
             int[] ranks = side <= 5 ? [.. Enumerable.Range(1, n)] : [1, 2, ((n - 1) / 4) + 1, (n + 1) / 2, n - ((n - 1) / 4), n - 1, n];
-            RankNetwork network = new(n, ranks);
-            T[] row = new T[ranks.Length * Width];
-            T[] all = new T[ranks.Length * plane.Length];
-            for (int y = 0; y < Height; y++)
-            {
-                WindowRanks.Row(windows, side, network, y, 0, Width, row);
-                for (int r = 0; r < ranks.Length; r++)
-                    row.AsSpan(r * Width, Width).CopyTo(all.AsSpan((r * plane.Length) + (y * Width)));
-            }
-
+            T[] all = RanksByQuantiles(rows, side, ranks);
             File.WriteAllBytes(folder.File($"ranks-{side}"), MemoryMarshal.AsBytes(all.AsSpan()).ToArray());
         }
 
@@ -88,17 +79,8 @@ public class ScipyRankTests
         Random random = new(7);
         Plane<double> plane = FilterRun.PlaneOf(Width, Height, (_, _) => random.NextDouble());
         Plane<SampleFlags> flags = FilterRun.PlaneOf(Width, Height, (_, _) => random.Next(3) == 0 ? SampleFlags.Missing : SampleFlags.None);
-        Windows<double> windows = Windows.Of(plane, flags, SampleFlags.Missing, 3, new Scratch(), SerialBands.Instance);
-        WindowQuantiles quantiles = new(7, 0.1, 0.25, 0.5, 0.75);
-        double[] all = new double[4 * plane.Length];
-        double[] row = new double[4 * Width];
-        int[] counts = new int[Width];
-        for (int y = 0; y < Height; y++)
-        {
-            quantiles.Row(windows, y, 0, Width, row, counts);
-            for (int p = 0; p < 4; p++)
-                row.AsSpan(p * Width, Width).CopyTo(all.AsSpan((p * plane.Length) + (y * Width)));
-        }
+        ReflectedRows<double> rows = new(plane, flags, SampleFlags.Missing, 3, new Scratch());
+        double[] all = Quantiles(rows, new WindowQuantiles(7, 0.1, 0.25, 0.5, 0.75));
 
         double[] holed = [.. Enumerable.Range(0, plane.Length).Select(i => flags.Buffer[i] == SampleFlags.None ? plane.Buffer[i] : double.NaN)];
         File.WriteAllBytes(folder.File("input"), MemoryMarshal.AsBytes(holed.AsSpan()).ToArray());
@@ -112,5 +94,27 @@ public class ScipyRankTests
             print('%.3g' % numpy.abs(ours - theirs).max())
             """);
         Assert.InRange(double.Parse(result.Output, System.Globalization.CultureInfo.InvariantCulture), 0, 1e-15);
+    }
+
+    /// <summary>The quantile of probability (rank - 1) / (n - 1) is that rank.</summary>
+    private static T[] RanksByQuantiles<T>(ReflectedRows<T> rows, int side, int[] ranks)
+        where T : unmanaged, System.Numerics.INumber<T> =>
+        Quantiles(rows, new WindowQuantiles(side, [.. ranks.Select(r => (r - 1.0) / ((side * side) - 1))]));
+
+    private static T[] Quantiles<T>(ReflectedRows<T> rows, WindowQuantiles quantiles)
+        where T : unmanaged, System.Numerics.INumber<T>
+    {
+        T[] all = new T[quantiles.Probabilities.Length * rows.Width * rows.Height];
+        QuantileBlocks<T> blocks = quantiles.Over(rows, 0, rows.Height, new Scratch());
+        while (blocks.Advance())
+        {
+            for (int row = 0; row < blocks.Height; row++)
+            {
+                for (int p = 0; p < quantiles.Probabilities.Length; p++)
+                    blocks.Values(p, row).CopyTo(all.AsSpan((((p * rows.Height) + blocks.Y + row) * rows.Width) + blocks.X));
+            }
+        }
+
+        return all;
     }
 }

@@ -43,8 +43,7 @@ internal sealed class RankScene<T>
 
     public Plane<SampleFlags> Flags { get; }
 
-    public Windows<T> Windows(int radius, SampleFlags without = SampleFlags.Missing) =>
-        Imaging.Windows.Of(Plane, Flags, without, radius, new Scratch(), SerialBands.Instance);
+    public ReflectedRows<T> Rows(int radius, SampleFlags without = SampleFlags.Missing) => new(Plane, Flags, without, radius, new Scratch());
 
     /// <summary>The samples of a window without those of any flag, in ascending order.</summary>
     public List<T> Sorted(int x, int y, int side, SampleFlags without = SampleFlags.Missing)

@@ -25,14 +25,14 @@ public class VectorWidthTests
         string digest = Digest();
         Assert.Equal(digest, Digest());
         if (Environment.GetEnvironmentVariable(ReportVariable) is { Length: > 0 } report)
-            File.WriteAllText(report, $"{WindowRanks.Widest} {digest}");
+            File.WriteAllText(report, $"{LaneWidths.Widest} {digest}");
     }
 
     [Fact]
     public void The_widest_vectors_of_the_machine_are_in_use()
     {
         int bits = Vector512.IsHardwareAccelerated ? 512 : Vector256.IsHardwareAccelerated ? 256 : Vector128.IsHardwareAccelerated ? 128 : 0;
-        Assert.Equal(bits, (int)WindowRanks.Widest);
+        Assert.Equal(bits, (int)LaneWidths.Widest);
     }
 
     [WiderThanFact(256)]
@@ -100,7 +100,7 @@ public class VectorWidthTests
 internal sealed class WiderThanFactAttribute : FactAttribute
 {
     public WiderThanFactAttribute(int bits) =>
-        Skip = RuntimeInformation.ProcessArchitecture == Architecture.X64 && (int)WindowRanks.Widest > bits
+        Skip = RuntimeInformation.ProcessArchitecture == Architecture.X64 && (int)LaneWidths.Widest > bits
             ? null
             : $"x64 vectors of more than {bits} bits are not here";
 }

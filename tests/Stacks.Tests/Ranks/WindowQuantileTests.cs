@@ -31,16 +31,13 @@ public class WindowQuantileTests
             foreach ((int width, int height) in new[] { (1, 1), (2, 3), (9, 4), (70, 9), (130, 3) })
             {
                 RankScene<T> scene = new(width, height, side + width, missing);
-                Windows<T> windows = scene.Windows(side / 2);
-                T[] results = new T[probabilities.Length * width];
-                int[] counts = new int[width];
-                for (int y = 0; y < height; y++)
+                foreach (WindowResults<T> results in WindowResults<T>.AllForms(quantiles, scene.Rows(side / 2)))
                 {
-                    quantiles.Row(windows, y, 0, width, results, counts);
-                    for (int x = 0; x < width; x++)
+                    for (int i = 0; i < width * height; i++)
                     {
+                        (int x, int y) = (i % width, i / width);
                         List<T> sorted = scene.Sorted(x, y, side);
-                        Assert.Equal(sorted.Count, counts[x]);
+                        Assert.Equal(sorted.Count, results.Counts[i]);
                         for (int p = 0; p < probabilities.Length && sorted.Count > 0; p++)
                         {
                             // Hyndman and Fan 1996, definition 7: x[j] + (h - j)(x[j+1] - x[j]), h = (n - 1) p + 1.
@@ -52,12 +49,12 @@ public class WindowQuantileTests
                             {
                                 // Products of decimals decide ties exactly.
                                 decimal tie = (decimal)low + ((h - j) * ((decimal)high - (decimal)low));
-                                Assert.Equal((double)decimal.Round(tie, MidpointRounding.ToEven), double.CreateChecked(results[(p * width) + x]));
+                                Assert.Equal((double)decimal.Round(tie, MidpointRounding.ToEven), double.CreateChecked(results.Values[p][i]));
                             }
                             else
                             {
                                 double tolerance = (typeof(T) == typeof(float) ? 1e-7 : 2e-16) * Math.Max(Math.Abs(low), Math.Abs(high));
-                                Assert.InRange(double.CreateChecked(results[(p * width) + x]), exact - tolerance, exact + tolerance);
+                                Assert.InRange(double.CreateChecked(results.Values[p][i]), exact - tolerance, exact + tolerance);
                             }
                         }
                     }

@@ -10,8 +10,6 @@ public class WindowRankTests
 {
     private static readonly int[] Sides = [1, 2, 3, 4, 5, 7, 8, 9, 15, 16, 17, 31, 32, 33, 40];
 
-    private static IEnumerable<LaneWidth> Widths => Enum.GetValues<LaneWidth>().Where(w => w <= WindowRanks.Widest);
-
     public static TheoryData<int> Windows => [3, 5, 7, 9, 11, 13, 15];
 
     [Theory]
@@ -33,25 +31,29 @@ public class WindowRankTests
     private static void EveryRank<T>(int side)
         where T : unmanaged, INumber<T>
     {
-        int n = side * side;
-        RankNetwork all = new(n, [.. Enumerable.Range(1, n)]);
+        int n = side * side, pixels = WindowRanks.Pixels<T>();
+        WindowRanks all = new(side, [.. Enumerable.Range(1, n)]);
+        T[] results = new T[n * pixels];
         foreach ((int width, int height) in Shapes())
         {
             RankScene<T> scene = new(width, height, (side * 10007) + (width * 101) + height);
-            Windows<T> windows = scene.Windows(side / 2);
-            T[] results = new T[n * width];
+            ReflectedRows<T> rows = scene.Rows(side / 2);
             for (int y = 0; y < height; y += 1 + (height / 8))
             {
                 List<T>[] expected = [.. Enumerable.Range(0, width).Select(x => scene.Sorted(x, y, side))];
-                foreach (LaneWidth lanes in Widths)
+                foreach ((LaneWidth lanes, NetworkForm form) in WindowResults<T>.Variants.Where(v => side <= 5 || v.Form == NetworkForm.Interpreted))
                 {
-                    WindowRanks.Row(windows, side, all, y, 0, width, results, lanes);
-                    for (int x = 0; x < width; x++)
+                    for (int first = 0; first < width; first += pixels)
                     {
-                        for (int r = 0; r < n; r++)
+                        all.At(rows, first, y, results, lanes, form);
+                        for (int x = first; x < Math.Min(width, first + pixels); x++)
                         {
-                            if (!SameBits(expected[x][r], results[(r * width) + x]))
-                                Assert.Fail($"{width} x {height}, window {side}, ({x}, {y}), rank {r + 1}, {lanes}: {results[(r * width) + x]}, expected {expected[x][r]}");
+                            for (int r = 0; r < n; r++)
+                            {
+                                T found = results[(r * pixels) + x - first];
+                                if (!SameBits(expected[x][r], found))
+                                    Assert.Fail($"{width} x {height}, window {side}, ({x}, {y}), rank {r + 1}, {lanes}, {form}: {found}, expected {expected[x][r]}");
+                            }
                         }
                     }
                 }
@@ -65,44 +67,16 @@ public class WindowRankTests
     {
         // METHODS: Q1 = rank (n-1)/4 + 1, median = rank (n+1)/2, Q3 = rank n - (n-1)/4 of a full window.
         int n = side * side;
+        int[] ranks = [((n - 1) / 4) + 1, (n + 1) / 2, n - ((n - 1) / 4)];
         RankScene<ushort> scene = new(70, 19, side);
-        Windows<ushort> windows = scene.Windows(side / 2);
-        WindowQuantiles quartiles = new(side, 0.25, 0.5, 0.75);
-        ushort[] results = new ushort[3 * 70];
-        int[] counts = new int[70];
-        for (int y = 0; y < 19; y++)
+        foreach (WindowResults<ushort> results in WindowResults<ushort>.AllForms(new WindowQuantiles(side, 0.25, 0.5, 0.75), scene.Rows(side / 2)))
         {
-            foreach (LaneWidth lanes in Widths)
+            for (int i = 0; i < 70 * 19; i++)
             {
-                quartiles.Row(windows, y, 0, 70, results, counts, lanes);
-                for (int x = 0; x < 70; x++)
-                {
-                    List<ushort> sorted = scene.Sorted(x, y, side);
-                    Assert.Equal(sorted[((n - 1) / 4) + 1 - 1], results[x]);
-                    Assert.Equal(sorted[((n + 1) / 2) - 1], results[70 + x]);
-                    Assert.Equal(sorted[n - ((n - 1) / 4) - 1], results[140 + x]);
-                    Assert.Equal(n, counts[x]);
-                }
-            }
-        }
-    }
-
-    [Fact]
-    public void Parts_of_a_row_are_what_the_whole_row_is()
-    {
-        RankScene<ushort> scene = new(83, 5, 1);
-        Windows<ushort> windows = scene.Windows(2);
-        RankNetwork network = new(25, 7, 13);
-        ushort[] whole = new ushort[2 * 83];
-        WindowRanks.Row(windows, 5, network, 2, 0, 83, whole);
-        for (int first = 0; first < 83; first += 5)
-        {
-            for (int end = first + 1; end <= 83; end += 3)
-            {
-                ushort[] part = new ushort[2 * (end - first)];
-                WindowRanks.Row(windows, 5, network, 2, first, end, part);
-                Assert.Equal(whole[first..end], part[..(end - first)]);
-                Assert.Equal(whole[(83 + first)..(83 + end)], part[(end - first)..]);
+                List<ushort> sorted = scene.Sorted(i % 70, i / 70, side);
+                for (int p = 0; p < 3; p++)
+                    Assert.Equal(sorted[ranks[p] - 1], results.Values[p][i]);
+                Assert.Equal(n, results.Counts[i]);
             }
         }
     }
@@ -114,7 +88,7 @@ public class WindowRankTests
         // sequences of zeros and ones finds it of all sequences. For 9 samples these are 512.
         for (int rank = 1; rank <= 9; rank++)
         {
-            RankNetwork network = new(9, rank);
+            WindowRanks network = new(3, rank);
             for (int pattern = 0; pattern < 512; pattern++)
                 Assert.Equal(BitOperations.PopCount((uint)pattern) > 9 - rank ? 1 : 0, Apply(network, i => (ushort)((pattern >> i) & 1), 3)[0]);
         }
@@ -129,7 +103,7 @@ public class WindowRankTests
         int[] order = [.. Enumerable.Range(1, n)];
         foreach (int rank in Enumerable.Range(1, n).Where(r => n < 60 || r % 7 == 1 || r >= n - 1))
         {
-            RankNetwork network = new(n, rank);
+            WindowRanks network = new(side, rank);
             for (int round = 0; round < 8; round++)
             {
                 random.Shuffle(order);
@@ -142,20 +116,20 @@ public class WindowRankTests
     public void Negative_zero_counts_as_zero()
     {
         Plane<double> plane = new([-0.0, 0.0, -0.0, 0.0], 4, 1);
-        Windows<double> windows = Imaging.Windows.Of(
-            plane, new Plane<SampleFlags>(new SampleFlags[4], 4, 1), SampleFlags.Missing, 1, new Scratch(), SerialBands.Instance);
-        double[] result = new double[4];
-        WindowRanks.Row(windows, 3, new RankNetwork(9, 1), 0, 0, 4, result);
+        ReflectedRows<double> rows = new(plane, new Plane<SampleFlags>(new SampleFlags[4], 4, 1), SampleFlags.Missing, 2, new Scratch());
+        double[] result = new double[WindowRanks.Pixels<double>()];
+        new WindowRanks(3, 1).At(rows, 0, 0, result);
         Assert.All(result, v => Assert.False(double.IsNegative(v)));
+        foreach (WindowResults<double> results in WindowResults<double>.AllForms(new WindowQuantiles(5, 0, 0.3, 0.5, 1), rows))
+            Assert.All(results.Values, values => Assert.All(values, v => Assert.False(double.IsNegative(v))));
     }
 
-    private static ushort[] Apply(RankNetwork network, Func<int, ushort> sample, int side)
+    private static ushort[] Apply(WindowRanks network, Func<int, ushort> sample, int side)
     {
         Plane<ushort> plane = new([.. Enumerable.Range(0, side * side).Select(sample)], side, side);
-        Windows<ushort> windows = Imaging.Windows.Of(
-            plane, new Plane<SampleFlags>(new SampleFlags[side * side], side, side), SampleFlags.Missing, side / 2, new Scratch(), SerialBands.Instance);
-        ushort[] result = new ushort[1];
-        WindowRanks.Row(windows, side, network, side / 2, side / 2, (side / 2) + 1, result, LaneWidth.Single);
+        ReflectedRows<ushort> rows = new(plane, new Plane<SampleFlags>(new SampleFlags[side * side], side, side), SampleFlags.Missing, side / 2, new Scratch());
+        ushort[] result = new ushort[WindowRanks.Pixels<ushort>()];
+        network.At(rows, side / 2, side / 2, result, LaneWidth.Single, NetworkForm.Interpreted);
         return result;
     }
 

@@ -1,0 +1,86 @@
+using System.Numerics;
+using System.Runtime.Intrinsics;
+using Stacks.Abstractions;
+using Stacks.Imaging;
+
+namespace Stacks.Filters.AdaptiveMedian;
+
+/// <summary>
+/// Finds the pixels that the rules of <see cref="ImpulseSearch{T}"/> certainly leave alone, many at once and in single
+/// precision: those whose first trusted window is 3 or 5 and clears them. Every comparison keeps a margin of 1e-4, far
+/// beyond its rounding, so that what is in doubt is left to the exact rules. Values of 64 bits are all in doubt.
+/// </summary>
+internal sealed class ClearPixels<T>(ImpulseRules rules, NoiseModel noise)
+    where T : unmanaged, INumber<T>
+{
+    /// <summary>Pixels of an answer.</summary>
+    public const int Answer = 64;
+
+    private const int MostPixels = 512 + Answer;
+    private const float Margin = 1e-4f, RangeMargin = 1e-6f;
+
+    private readonly float[] values = new float[MostPixels], medians = new float[MostPixels], lower = new float[MostPixels];
+    private readonly float[] upper = new float[MostPixels], variances = new float[MostPixels];
+    private readonly ulong[] trusted = new ulong[MostPixels / Answer], untrusted = new ulong[MostPixels / Answer];
+    private readonly ulong[] clean = new ulong[MostPixels / Answer], clear = new ulong[MostPixels / Answer];
+
+    /// <summary>Finds them in a row of a block.</summary>
+    /// <param name="windows">The block.</param>
+    /// <param name="row">Its row.</param>
+    /// <param name="samples">The samples there.</param>
+    /// <returns>A bit for each pixel, lowest first, 64 a number: 1 where it is left alone.</returns>
+    public ReadOnlySpan<ulong> Find(QuartileWindows<T> windows, int row, ReadOnlySpan<T> samples)
+    {
+        int answers = (samples.Length + Answer - 1) / Answer;
+        clear.AsSpan(0, answers).Clear();
+        if (typeof(T) == typeof(double))
+            return clear.AsSpan(0, answers);
+        Singles.From(samples, values);
+        Judge(windows, 0, row, answers);
+        for (int i = 0; i < answers; i++)
+            clear[i] = trusted[i] & clean[i];
+        if (windows.Count == 1)
+            return clear.AsSpan(0, answers);
+
+        ulong[] firstUntrusted = [.. untrusted], firstClean = [.. clean];
+        Judge(windows, 1, row, answers);
+        for (int i = 0; i < answers; i++)
+            clear[i] |= trusted[i] & clean[i] & (firstUntrusted[i] | firstClean[i]);
+        return clear.AsSpan(0, answers);
+    }
+
+    private void Judge(QuartileWindows<T> windows, int window, int row, int answers)
+    {
+        QuantileBlocks<T> blocks = windows.Shared(window);
+        int width = blocks.Width;
+        Singles.From(blocks.Values(0, row), lower);
+        Singles.From(blocks.Values(1, row), medians);
+        Singles.From(blocks.Values(2, row), upper);
+        noise.VarianceByRow(blocks.X, blocks.Y + row, medians.AsSpan(0, width), variances.AsSpan(0, width));
+        double range = rules.Trust * NormalOrderStatistics.InterquartileRange(windows.FullCount(window));
+        Vector512<float> perRange = Vector512.Create((float)(range * range)), perDistance = Vector512.Create((float)(rules.Threshold * rules.Threshold));
+        Vector512<float> step = Vector512.Create((float)rules.QuantisationStep);
+        for (int answer = 0; answer < answers; answer++)
+        {
+            ulong trust = 0, distrust = 0, near = 0;
+            for (int part = 0; part < Answer; part += Vector512<float>.Count)
+            {
+                int i = (answer * Answer) + part;
+                Vector512<float> variance = Vector512.Create<float>(variances.AsSpan(i));
+                Vector512<float> iqr = Vector512.Create<float>(upper.AsSpan(i)) - Vector512.Create<float>(lower.AsSpan(i));
+                Vector512<float> distance = Vector512.Create<float>(values.AsSpan(i)) - Vector512.Create<float>(medians.AsSpan(i));
+                Vector512<float> wide = Vector512.Max((iqr * (1 + RangeMargin)) - step, Vector512<float>.Zero);
+                Vector512<float> narrow = Vector512.Max((iqr * (1 - RangeMargin)) - step, Vector512<float>.Zero);
+                Vector512<float> isFinite = Vector512.LessThan(variance, Vector512.Create(float.MaxValue));
+                trust |= Vector512.ExtractMostSignificantBits(
+                    Vector512.LessThanOrEqual(wide * wide * (1 + Margin), perRange * variance) & isFinite) << part;
+                distrust |= Vector512.ExtractMostSignificantBits(
+                    Vector512.GreaterThan(narrow * narrow * (1 - Margin), perRange * variance) & isFinite) << part;
+                near |= Vector512.ExtractMostSignificantBits(
+                    Vector512.LessThanOrEqual(distance * distance * (1 + Margin), perDistance * variance) & isFinite) << part;
+            }
+
+            (trusted[answer], untrusted[answer], clean[answer]) = (trust, distrust, near);
+        }
+    }
+}
