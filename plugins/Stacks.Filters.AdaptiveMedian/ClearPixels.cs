@@ -22,7 +22,8 @@ internal sealed class ClearPixels<T>(ImpulseRules rules, NoiseModel noise)
     private readonly float[] values = new float[MostPixels], medians = new float[MostPixels], lower = new float[MostPixels];
     private readonly float[] upper = new float[MostPixels], variances = new float[MostPixels];
     private readonly ulong[] trusted = new ulong[MostPixels / Answer], untrusted = new ulong[MostPixels / Answer];
-    private readonly ulong[] clean = new ulong[MostPixels / Answer], clear = new ulong[MostPixels / Answer];
+    private readonly ulong[] clean = new ulong[MostPixels / Answer];
+    private readonly ulong[] open = new ulong[MostPixels / Answer], clear = new ulong[MostPixels / Answer];
 
     /// <summary>Finds them in a row of a block.</summary>
     /// <param name="windows">The block.</param>
@@ -42,10 +43,12 @@ internal sealed class ClearPixels<T>(ImpulseRules rules, NoiseModel noise)
         if (windows.Count == 1)
             return clear.AsSpan(0, answers);
 
-        ulong[] firstUntrusted = [.. untrusted], firstClean = [.. clean];
+        // Where trust in the first is in doubt, both have to be content.
+        for (int i = 0; i < answers; i++)
+            open[i] = untrusted[i] | clean[i];
         Judge(windows, 1, row, answers);
         for (int i = 0; i < answers; i++)
-            clear[i] |= trusted[i] & clean[i] & (firstUntrusted[i] | firstClean[i]);
+            clear[i] |= trusted[i] & clean[i] & open[i];
         return clear.AsSpan(0, answers);
     }
 
@@ -81,6 +84,17 @@ internal sealed class ClearPixels<T>(ImpulseRules rules, NoiseModel noise)
             }
 
             (trusted[answer], untrusted[answer], clean[answer]) = (trust, distrust, near);
+        }
+
+        // The expected range is that of full windows.
+        ReadOnlySpan<ushort> counts = blocks.Counts(row);
+        ushort full = (ushort)windows.FullCount(window);
+        for (int i = counts.IndexOfAnyExcept(full); i >= 0 && i < counts.Length; i++)
+        {
+            if (counts[i] == full)
+                continue;
+            trusted[i / Answer] &= ~(1UL << (i % Answer));
+            untrusted[i / Answer] &= ~(1UL << (i % Answer));
         }
     }
 }

@@ -28,7 +28,7 @@ internal sealed class RobustFormStep<T> : IFilterStep<T>
     public int? Reach => quartiles.Side / 2;
 
     /// <inheritdoc/>
-    public long ScratchBytes => 
+    public long ScratchBytes =>
         ReflectedRows.ScratchBytes(layout.Width, layout.Height, quartiles.Side / 2) + quartiles.ScratchBytes<T>();
 
     /// <inheritdoc/>
