@@ -93,8 +93,8 @@ public sealed class BilateralFilter : IFilterPlugin
             Default = ParameterValue.Of(Auto),
             Words = [Auto, Exact, Fast],
             Meaning = "How the sums are taken: exact, pixel by pixel; fast, in a time independent of spatial_sigma, which must "
-                + "be 5 px or more; auto, fast from there on. A frame whose T spans more than 45,000 range sigmas is "
-                + "filtered exactly in any case",
+                + "be 5 px or more; auto, fast from there on, except for frames on so many range levels that exact is sooner "
+                + "done. A frame whose T spans more than 45,000 range sigmas is filtered exactly in any case",
             WhenRaised = "fast: within tolerance of the sum over all pixels",
             WhenLowered = "exact: within 1e-4 range sigmas of it",
         },
@@ -159,7 +159,7 @@ public sealed class BilateralFilter : IFilterPlugin
             BilateralStep<T> exact = new(new SpatialKernel(spatialSigma, layout.Width, layout.Height), rangeSigma, conserveFlux, resolved);
             return fast
                 ? new FastBilateralStep<T>(
-                    SpatialGrid.Of(spatialSigma, tolerance, layout.Width, layout.Height), LevelWeights.Of(tolerance), rangeSigma, conserveFlux, exact, resolved)
+                    SpatialGrid.Of(spatialSigma, tolerance, layout.Width, layout.Height), LevelWeights.Of(tolerance), rangeSigma, conserveFlux, method == Auto, exact, resolved)
                 : exact;
         }
     }

@@ -19,25 +19,24 @@ internal sealed class LevelFrame<T>
 {
     private readonly ThinLevels<T> thin;
     private readonly Plane<float> sums;
-    private readonly Plane<float> exchanges;
 
     /// <summary>Sorts a frame's samples.</summary>
     /// <param name="grid">Nodes.</param>
     /// <param name="weights">Levels.</param>
     /// <param name="guide">T, filled.</param>
+    /// <param name="slots">Which levels the grid holds.</param>
     /// <param name="values">v.</param>
     /// <param name="context">Bands and scratch.</param>
-    public LevelFrame(SpatialGrid grid, LevelWeights weights, GuideLevels guide, Plane<T> values, FrameContext context)
+    public LevelFrame(SpatialGrid grid, LevelWeights weights, GuideLevels guide, LevelSlots slots, Plane<T> values, FrameContext context)
     {
-        (Grid, Weights, Guide, Values) = (grid, weights, guide, values);
+        (Grid, Weights, Guide, Slots, Values) = (grid, weights, guide, slots, values);
         IScratch scratch = context.Scratch;
-        Slots = new LevelSlots(guide, weights.Count, grid.MostSlots, grid.ThinMembers, ThinLevels<T>.Capacity(grid), scratch);
         Crowds = new TileCrowds(grid, scratch);
         Crowds.Find(guide, weights.Room, context.Bands);
         Nodes = new GridNodes(grid, weights.Norm, scratch);
         thin = new ThinLevels<T>(this, scratch);
         sums = scratch.Rent<float>(grid.Width, grid.Height);
-        exchanges = scratch.Rent<float>(grid.Width, grid.Height);
+        Exchanges = scratch.Rent<float>(grid.Width, grid.Height);
     }
 
     /// <summary>Places in space.</summary>
@@ -61,9 +60,12 @@ internal sealed class LevelFrame<T>
     /// <summary>Sums on the grid.</summary>
     public GridNodes Nodes { get; }
 
-    /// <summary>Bytes of all this, guide and values apart.</summary>
+    /// <summary>sum_q w_pq c_q (v_q - v_p) of the last application that took values.</summary>
+    public Plane<float> Exchanges { get; }
+
+    /// <summary>Bytes of all this, guide, slots and values apart.</summary>
     public static long Bytes(SpatialGrid grid) =>
-        LevelSlots.Bytes(grid.MostSlots) + TileCrowds.Bytes(grid) + GridNodes.Bytes(grid) + ThinLevels<T>.Bytes(grid)
+        TileCrowds.Bytes(grid) + GridNodes.Bytes(grid) + ThinLevels<T>.Bytes(grid)
         + (2L * sizeof(float) * grid.Width * grid.Height);
 
     /// <summary>
@@ -76,9 +78,9 @@ internal sealed class LevelFrame<T>
         where TLanes : struct, ILevelLanes<TLanes>
     {
         const int apart = SpatialGrid.Support;
-        thin.Sum<TForm>(factors, sums, exchanges, context);
+        thin.Sum<TForm>(factors, sums, Exchanges, context);
         GridSpread<T, TForm, TLanes> spread = new(this, factors);
-        GridGather<T, TForm, TLanes> gather = new(this, sums, exchanges);
+        GridGather<T, TForm, TLanes> gather = new(this, sums, Exchanges);
         for (Slots.Restart(); Slots.NextBatch();)
         {
             Nodes.Clear(Slots.Count, TForm.Values);
@@ -103,7 +105,7 @@ internal sealed class LevelFrame<T>
         context.Bands.ForEach(Grid.Height, (first, end) =>
         {
             for (int y = first; y < end; y++)
-                finish(y, sums.Row(y), exchanges.Row(y));
+                finish(y, sums.Row(y), Exchanges.Row(y));
         });
     }
 

@@ -19,21 +19,19 @@ internal sealed class LevelSlots
     private readonly Plane<double> values;
     private int next;
 
-    /// <summary>Rents planes.</summary>
+    /// <summary>Rents planes and counts members.</summary>
+    /// <param name="grid">Sets how many slots there are at once, and which levels are thin.</param>
     /// <param name="guide">Who is on which level.</param>
     /// <param name="window">J, levels of a sample.</param>
-    /// <param name="most">Slots of a batch at most.</param>
-    /// <param name="thin">Members up to which a level gets no slot, as long as <paramref name="capacity"/> allows.</param>
-    /// <param name="capacity">Members of thin levels at most.</param>
     /// <param name="scratch">Scratch.</param>
-    public LevelSlots(GuideLevels guide, int window, int most, int thin, int capacity, IScratch scratch)
+    public LevelSlots(SpatialGrid grid, GuideLevels guide, int window, IScratch scratch)
     {
-        (this.guide, this.window, this.most) = (guide, window, most);
+        (this.guide, this.window, most) = (guide, window, grid.MostSlots);
         slots = scratch.Rent<int>(GuideLevels.Axis, 1);
         values = scratch.Rent<double>(most, 1);
         Busy = scratch.Rent<float>(most, 1);
         Members = scratch.Rent<int>(GuideLevels.Axis, 1);
-        Thin = thin;
+        Thin = grid.ThinMembers;
         int members = 0;
         for (int level = 0; level < GuideLevels.Axis; level++)
         {
@@ -41,8 +39,10 @@ internal sealed class LevelSlots
             Members.Samples[level] = members;
         }
 
-        while (ThinSamples() > capacity)
+        while (ThinSamples() > grid.ThinCapacity)
             Thin /= 2;
+        foreach (int count in Members.Samples)
+            Thick += count > Thin ? 1 : 0;
     }
 
     /// <summary>Samples that have a weight on each level.</summary>
@@ -50,6 +50,9 @@ internal sealed class LevelSlots
 
     /// <summary>Members up to which a level gets no slot.</summary>
     public int Thin { get; private set; }
+
+    /// <summary>Levels of more members than that: those that need a slot.</summary>
+    public int Thick { get; }
 
     /// <summary>Slots of this batch.</summary>
     public int Count { get; private set; }

@@ -87,6 +87,9 @@ internal sealed class SpatialGrid
     /// </summary>
     public int ThinMembers => (int)(3 * Math.Sqrt((double)NodesX * NodesY));
 
+    /// <summary>Samples on thin levels at most; where there are more, fewer levels count as thin.</summary>
+    public int ThinCapacity => Math.Max(1 << 14, Width * Height / 32);
+
     private static double[] BlurOf(double sigma)
     {
         List<double> taps = [];

@@ -37,7 +37,7 @@ internal sealed class ThinLevels<T>
         }
 
         starts.Samples[GuideLevels.Axis] = count;
-        int capacity = Capacity(grid);
+        int capacity = grid.ThinCapacity;
         levels = scratch.Rent<int>(capacity, 1);
         columns = scratch.Rent<int>(capacity, 1);
         rows = scratch.Rent<int>(capacity, 1);
@@ -56,11 +56,8 @@ internal sealed class ThinLevels<T>
         }
     }
 
-    /// <summary>Members at most.</summary>
-    public static int Capacity(SpatialGrid grid) => Math.Max(1024, grid.Width * grid.Height / 32);
-
     /// <summary>Bytes of all this.</summary>
-    public static long Bytes(SpatialGrid grid) => (GuideLevels.Axis * 8L) + (Capacity(grid) * (20L + (Lanes * sizeof(float))));
+    public static long Bytes(SpatialGrid grid) => (GuideLevels.Axis * 8L) + (grid.ThinCapacity * (20L + (Lanes * sizeof(float))));
 
     /// <summary>Sets <paramref name="sums"/> and <paramref name="exchanges"/> to what thin levels add to them; 0 away from members.</summary>
     public void Sum<TForm>(Plane<float> factors, Plane<float> sums, Plane<float> exchanges, FrameContext context)

@@ -33,6 +33,37 @@ internal sealed class TileCrowds(SpatialGrid grid, IScratch scratch)
         }
     });
 
+    /// <summary>Indices of the lowest and the highest guide sample in the first tiles that reach the frame's extreme levels; null when none takes part.</summary>
+    public (int Lowest, int Highest)? Extremes(Plane<int> guide)
+    {
+        (int Tile, int Level) low = (-1, int.MaxValue), high = (-1, -1);
+        for (int tile = 0; tile < highest.Length; tile++)
+        {
+            if (highest.Samples[tile] >= 0 && lowest.Samples[tile] < low.Level)
+                low = (tile, lowest.Samples[tile]);
+            if (highest.Samples[tile] > high.Level)
+                high = (tile, highest.Samples[tile]);
+        }
+
+        return high.Tile < 0 ? null : (Extreme(guide, low.Tile, -1), Extreme(guide, high.Tile, 1));
+    }
+
+    private int Extreme(Plane<int> guide, int tile, int sign)
+    {
+        int left = tile % grid.TilesX * grid.Pitch, top = tile / grid.TilesX * grid.Pitch, best = -1;
+        for (int y = top; y < Math.Min(top + grid.Pitch, grid.Height); y++)
+        {
+            for (int x = left; x < Math.Min(left + grid.Pitch, grid.Width); x++)
+            {
+                int i = (y * grid.Width) + x;
+                if (guide.Samples[i] >= 0 && (best < 0 || sign * guide.Samples[i] > sign * guide.Samples[best]))
+                    best = i;
+            }
+        }
+
+        return best;
+    }
+
     private void FindIn(Plane<int> samples, int tileX, int tileY, int room)
     {
         int left = tileX * grid.Pitch, top = tileY * grid.Pitch;

@@ -14,6 +14,10 @@ internal static class Filtering
     /// <param name="threads">Row bands that run side by side.</param>
     /// <param name="given">Parameters as a recipe would give them.</param>
     public static Action Of<T>(IFilterPlugin filter, Plane<T> input, Plane<SampleFlags>? flags = null, int threads = 1, params (string Name, ParameterValue Value)[] given)
+        where T : unmanaged => Of(filter, input, Scene.Noise, flags, threads, given);
+
+    /// <summary>The same with another noise model than the scene's.</summary>
+    public static Action Of<T>(IFilterPlugin filter, Plane<T> input, NoiseModel noise, Plane<SampleFlags>? flags, int threads, params (string Name, ParameterValue Value)[] given)
         where T : unmanaged
     {
         IFilterStep<T> step = FilterRun.Prepare(filter, input, given);
@@ -23,7 +27,7 @@ internal static class Filtering
         FrameContext context = new()
         {
             FrameIndex = 0,
-            Noise = Scene.Noise,
+            Noise = noise,
             HasMissing = flags is not null,
             Bands = threads == 1 ? SerialBands.Instance : new ParallelBands(threads),
             Scratch = scratch,

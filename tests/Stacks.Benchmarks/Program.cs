@@ -10,6 +10,7 @@ using Stacks.Benchmarks;
     ("pipeline", PipelineRatios.Of),
     ("local-statistics", LocalStatisticsRatios.Of),
     ("bilateral", BilateralRatios.Of),
+    ("fast-bilateral", FastBilateralRatios.Of),
 ];
 
 switch (args)
