@@ -1,4 +1,5 @@
 using System.Numerics;
+using System.Runtime.InteropServices;
 using System.Runtime.Intrinsics;
 using Stacks.Abstractions;
 using Stacks.Imaging;
@@ -63,24 +64,22 @@ internal sealed class ClearPixels<T>(ImpulseRules rules, NoiseModel noise)
         double range = rules.Trust * NormalOrderStatistics.InterquartileRange(windows.FullCount(window));
         Vector512<float> perRange = Vector512.Create((float)(range * range)), perDistance = Vector512.Create((float)(rules.Threshold * rules.Threshold));
         Vector512<float> step = Vector512.Create((float)rules.QuantisationStep);
+        Vector512<float> wider = Vector512.Create(1 + RangeMargin), narrower = Vector512.Create(1 - RangeMargin);
+        Vector512<float> above = Vector512.Create(1 + Margin), below = Vector512.Create(1 - Margin);
         for (int answer = 0; answer < answers; answer++)
         {
             ulong trust = 0, distrust = 0, near = 0;
             for (int part = 0; part < Answer; part += Vector512<float>.Count)
             {
                 int i = (answer * Answer) + part;
-                Vector512<float> variance = Vector512.Create<float>(variances.AsSpan(i));
-                Vector512<float> iqr = Vector512.Create<float>(upper.AsSpan(i)) - Vector512.Create<float>(lower.AsSpan(i));
-                Vector512<float> distance = Vector512.Create<float>(values.AsSpan(i)) - Vector512.Create<float>(medians.AsSpan(i));
-                Vector512<float> wide = Vector512.Max((iqr * (1 + RangeMargin)) - step, Vector512<float>.Zero);
-                Vector512<float> narrow = Vector512.Max((iqr * (1 - RangeMargin)) - step, Vector512<float>.Zero);
-                Vector512<float> isFinite = Vector512.LessThan(variance, Vector512.Create(float.MaxValue));
-                trust |= Vector512.ExtractMostSignificantBits(
-                    Vector512.LessThanOrEqual(wide * wide * (1 + Margin), perRange * variance) & isFinite) << part;
-                distrust |= Vector512.ExtractMostSignificantBits(
-                    Vector512.GreaterThan(narrow * narrow * (1 - Margin), perRange * variance) & isFinite) << part;
-                near |= Vector512.ExtractMostSignificantBits(
-                    Vector512.LessThanOrEqual(distance * distance * (1 + Margin), perDistance * variance) & isFinite) << part;
+                Vector512<float> variance = Load(variances, i), iqr = Load(upper, i) - Load(lower, i);
+                Vector512<float> distance = Load(values, i) - Load(medians, i);
+                Vector512<float> wide = Vector512.MaxNative((iqr * wider) - step, Vector512<float>.Zero);
+                Vector512<float> narrow = Vector512.MaxNative((iqr * narrower) - step, Vector512<float>.Zero);
+                Vector512<float> limit = perRange * variance, isFinite = Vector512.LessThan(variance, Vector512.Create(float.MaxValue));
+                trust |= (Vector512.LessThanOrEqual(wide * wide * above, limit) & isFinite).ExtractMostSignificantBits() << part;
+                distrust |= (Vector512.GreaterThan(narrow * narrow * below, limit) & isFinite).ExtractMostSignificantBits() << part;
+                near |= (Vector512.LessThanOrEqual(distance * distance * above, perDistance * variance) & isFinite).ExtractMostSignificantBits() << part;
             }
 
             (trusted[answer], untrusted[answer], clean[answer]) = (trust, distrust, near);
@@ -97,4 +96,7 @@ internal sealed class ClearPixels<T>(ImpulseRules rules, NoiseModel noise)
             untrusted[i / Answer] &= ~(1UL << (i % Answer));
         }
     }
+
+    private static Vector512<float> Load(float[] numbers, int i) =>
+        Vector512.LoadUnsafe(ref MemoryMarshal.GetArrayDataReference(numbers), (nuint)i);
 }

@@ -1,5 +1,6 @@
 using System.Numerics;
 using System.Runtime.CompilerServices;
+using System.Runtime.InteropServices;
 using Stacks.Abstractions;
 using Stacks.Imaging;
 
@@ -35,8 +36,13 @@ internal static class Replacement<T>
         for (int y = first; y < end; y++)
         {
             ReadOnlySpan<SampleFlags> row = judged.Row(y);
-            for (int x = 0; x < row.Length; x++)
+            for (int x = 0; ; x++)
             {
+                // Defects and judgements are the upper bits, so a byte with any of them is at least the lowest of them.
+                int next = MemoryMarshal.AsBytes(row[x..]).IndexOfAnyInRange((byte)SampleFlags.Defect, byte.MaxValue);
+                if (next < 0)
+                    break;
+                x += next;
                 flags[x, y] |= row[x] & SampleFlags.KeptAsSource;
                 bool isDefect = (row[x] & (SampleFlags.Defect | SampleFlags.Missing)) == SampleFlags.Defect;
                 if (!isDefect && (row[x] & SampleFlags.Replaced) == 0)
