@@ -9,20 +9,32 @@ namespace Stacks.Formats.Fits;
 internal static class FitsChecksum
 {
     /// <summary>
-    /// The sum over big-endian 32-bit words; bytes after the last whole word are taken as if zeros followed. Two words
-    /// are added at a time: a carry out of 64 bits comes round to the lowest, and the halves are added at the end.
+    /// The sum over big-endian 32-bit words; bytes after the last whole word are taken as if zeros followed. Lanes of 64
+    /// bits take the carries of 2^32 words; these come round at the end.
     /// </summary>
     public static uint Sum(ReadOnlySpan<byte> bytes)
     {
-        ulong sum = 0;
-        ReadOnlySpan<ulong> pairs = MemoryMarshal.Cast<byte, ulong>(bytes);
-        foreach (ulong pair in pairs)
-            sum = Add(sum, BinaryPrimitives.ReverseEndianness(pair));
+        ReadOnlySpan<Vector<ushort>> vectors = MemoryMarshal.Cast<byte, Vector<ushort>>(bytes);
+        Vector<ulong> even = Vector<ulong>.Zero, odd = Vector<ulong>.Zero, low = new(uint.MaxValue);
+        foreach (Vector<ushort> vector in vectors)
+        {
+            Vector<uint> halves = Vector.AsVectorUInt32((vector << 8) | (vector >>> 8));
+            Vector<ulong> words = Vector.AsVectorUInt64((halves << 16) | (halves >>> 16));
+            even += words & low;
+            odd += words >>> 32;
+        }
 
-        Span<byte> tail = stackalloc byte[8];
-        tail.Clear();
-        bytes[(pairs.Length * 8)..].CopyTo(tail);
-        sum = Add(sum, BinaryPrimitives.ReadUInt64BigEndian(tail));
+        ulong sum = 0;
+        for (int lane = 0; lane < Vector<ulong>.Count; lane++)
+            sum = Add(Add(sum, even[lane]), odd[lane]);
+        Span<byte> word = stackalloc byte[sizeof(uint)];
+        for (ReadOnlySpan<byte> rest = bytes[(vectors.Length * Vector<byte>.Count)..]; rest.Length > 0; rest = rest[Math.Min(rest.Length, word.Length)..])
+        {
+            word.Clear();
+            rest[..Math.Min(rest.Length, word.Length)].CopyTo(word);
+            sum = Add(sum, BinaryPrimitives.ReadUInt32BigEndian(word));
+        }
+
         return Add((uint)sum, (uint)(sum >> 32));
     }
 

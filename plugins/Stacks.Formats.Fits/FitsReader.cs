@@ -137,6 +137,9 @@ internal sealed class FitsReader : IStackReader
         DecodePlane(hdu, frame - hdu.FirstFrame, raw, stored);
     }
 
+    /// <inheritdoc/>
+    public bool DecodesInPlace(int frame) => HduOf(frame).Tiles is null;
+
     /// <summary>Reads and decodes a plane of a science HDU or of a quality mask.</summary>
     /// <param name="hdu">The HDU.</param>
     /// <param name="plane">The plane, from 0.</param>
@@ -165,8 +168,8 @@ internal sealed class FitsReader : IStackReader
             return;
         }
 
-        if (raw.Length != hdu.PlaneBytes)
-            throw new StackFormatException(string.Create(CultureInfo.InvariantCulture, $"{hdu.Where}, plane {plane}"), $"{raw.Length} bytes where the header promises {hdu.PlaneBytes}", "get the file again");
+        if (raw.Length != stored.Length)
+            throw new StackFormatException(string.Create(CultureInfo.InvariantCulture, $"{hdu.Where}, plane {plane}"), $"{raw.Length} bytes where the header promises {stored.Length}", "get the file again");
         SampleEncoding.Decode(hdu.Layout!.SampleType, raw, stored);
     }
 

@@ -87,6 +87,13 @@ internal sealed class OmeSetReader : IStackReader
     }
 
     /// <inheritdoc/>
+    public long RawBytes(int frame)
+    {
+        using ReaderPool.Lease file = readers.Lend(Set.Planes[frame].File);
+        return file.Reader.RawBytes(((TiffReader)file.Reader).FrameOfPage(Set.Planes[frame].Page));
+    }
+
+    /// <inheritdoc/>
     public bool MarkQuality(int frame, Plane<SampleFlags> flags) => false;
 
     /// <inheritdoc/>

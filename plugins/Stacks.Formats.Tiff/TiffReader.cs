@@ -149,6 +149,15 @@ internal sealed class TiffReader : IStackReader
     }
 
     /// <inheritdoc/>
+    public long RawBytes(int frame)
+    {
+        // Of a chunky page all samples of a pixel are read for each of them. Before the segments stand their lengths.
+        SegmentGrid grid = PageOf(frame).Layout.Grid;
+        long together = grid.Planes == 1 ? PageOf(frame).Layout.Samples : 1;
+        return (together * Layout(frame).StoredBytes) + (sizeof(int) * grid.PlaneCount);
+    }
+
+    /// <inheritdoc/>
     public bool MarkQuality(int frame, Plane<SampleFlags> flags) => false;
 
     /// <inheritdoc/>

@@ -119,6 +119,15 @@ public interface IStackReader : IDisposable
     /// <exception cref="StackFormatException">The bytes are not what the headers promise.</exception>
     void Decode(int frame, ReadOnlySpan<byte> raw, Span<byte> stored);
 
+    /// <summary>
+    /// True when what <see cref="Read"/> gives is as long as the stored samples, and any part of it that holds whole samples
+    /// may be decoded apart and where it stands: <see cref="Decode"/> then gets one span as raw and as stored.
+    /// </summary>
+    bool DecodesInPlace(int frame) => false;
+
+    /// <summary>Most bytes that <see cref="Read"/> gives, for plans of memory; compressed ones are taken as large as their samples.</summary>
+    long RawBytes(int frame) => Layout(frame).StoredBytes;
+
     /// <summary>Marks samples that the file's own quality mask calls bad.</summary>
     /// <param name="frame">The frame.</param>
     /// <param name="flags">A plane of the frame's shape; <see cref="SampleFlags.Missing"/> is added where the mask says so.</param>

@@ -1,4 +1,5 @@
 using System.Numerics;
+using System.Runtime.CompilerServices;
 using Stacks.Abstractions;
 
 namespace Stacks.Noise;
@@ -86,6 +87,7 @@ public static class DifferenceNoise
     }
 
     /// <summary>Responses of one row and the means of their nine samples; NaN and 0 where a sample is unusable.</summary>
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     private static void Respond<T>(
         Plane<T> values, Plane<SampleFlags> flags, int stepX, int stepY, int y, Span<double> responses, Span<float> levels)
         where T : unmanaged, INumber<T>

@@ -87,6 +87,32 @@ public static class RankSelection
         }
     }
 
+    /// <summary>The next other value below or above a ranked sample, and its place.</summary>
+    /// <param name="samples">All samples; not NaN.</param>
+    /// <param name="at">One of them; it is not the last on that side.</param>
+    /// <param name="isBelow">The next below, else the next above.</param>
+    public static RankedSample<double> Neighbour(ReadOnlySpan<double> samples, RankedSample<double> at, bool isBelow)
+    {
+        // Negated, the next below is the next above.
+        Vector512<double> sign = Vector512.Create(isBelow ? -1.0 : 1.0), nearest = Vector512.Create(double.PositiveInfinity);
+        Vector512<double> values = Vector512.Create(at.Value) * sign;
+        ReadOnlySpan<Vector512<double>> vectors = MemoryMarshal.Cast<double, Vector512<double>>(samples);
+        foreach (Vector512<double> vector in vectors)
+        {
+            Vector512<double> signed = vector * sign;
+            nearest = Vector512.Min(nearest, Vector512.ConditionalSelect(Vector512.GreaterThan(signed, values), signed, nearest));
+        }
+
+        double next = double.PositiveInfinity;
+        for (int lane = 0; lane < Vector512<double>.Count; lane++)
+            next = Math.Min(next, nearest[lane]);
+        foreach (double sample in samples[(vectors.Length * Vector512<double>.Count)..])
+            next = sample * sign[0] > values[0] ? Math.Min(next, sample * sign[0]) : next;
+        double value = next * sign[0];
+        int equal = samples.Count(value);
+        return new RankedSample<double>(value, isBelow ? at.Below - equal : at.Below + at.Equal, equal);
+    }
+
     /// <summary>Two samples that very likely have a share of all samples between them: four standard errors to each side.</summary>
     private static (T Low, T High) Fences<T>(ReadOnlySpan<T> samples, ReadOnlySpan<SampleFlags> flags, SampleFlags without, double share)
         where T : unmanaged, INumber<T>

@@ -71,10 +71,10 @@ public static class Spread
         if (place == middle || at.Equal == samples.Length)
             return at.Value;
 
-        long neighbourRank = place < middle ? at.Below - 1 : at.Below + at.Equal;
-        if (neighbourRank < 0 || neighbourRank >= samples.Length)
+        bool isBelow = place < middle;
+        if (isBelow ? at.Below == 0 : at.Below + at.Equal == samples.Length)
             return at.Value;
-        RankedSample<double> neighbour = RankSelection.Select(samples, [], SampleFlags.None, neighbourRank, counts);
+        RankedSample<double> neighbour = RankSelection.Neighbour(samples, at, isBelow);
         double neighbourMiddle = neighbour.Below + (neighbour.Equal / 2.0);
         return at.Value + ((neighbour.Value - at.Value) * (place - middle) / (neighbourMiddle - middle));
     }

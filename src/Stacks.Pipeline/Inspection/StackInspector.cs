@@ -69,7 +69,7 @@ public static class StackInspector
         samples.Mark(stored, layout, flags);
 
         WorkPlane values = planes.Start(layout.WorkType);
-        values.Load(samples, stored, layout.Transform);
+        values.Load(samples, stored, layout.Transform, 0, (int)layout.Length);
         slot.Scratch.Reset();
         (double minimum, double maximum) = values.Extremes(flags);
         FlagCounts counts = FlagScan.CountAll(flags);

@@ -16,8 +16,9 @@ public sealed record KindStep(PlannedStep Step, WorkType WorkType, IReadOnlyList
 /// <param name="Count">How many there are.</param>
 /// <param name="Steps">The steps that apply to them.</param>
 /// <param name="Output">Sample type of their results.</param>
+/// <param name="SourceBytes">Bytes that one of them takes as it is read and decoded.</param>
 /// <param name="Noise">Origin and formula of the noise model of the first of them; null when there is none.</param>
-public sealed record FrameKind(FrameLayout Layout, int FirstFrame, int Count, IReadOnlyList<KindStep> Steps, SampleType Output, string? Noise);
+public sealed record FrameKind(FrameLayout Layout, int FirstFrame, int Count, IReadOnlyList<KindStep> Steps, SampleType Output, long SourceBytes, string? Noise);
 
 /// <summary>Sorts a stack's frames into kinds and prepares every step on each, so that errors come before the run.</summary>
 internal static class FrameKinds
@@ -38,10 +39,10 @@ internal static class FrameKinds
         CheckChannels(plan.Recipe, plan.Steps, layouts.Keys);
         PreparedSteps prepared = new(plan);
         NoiseModels models = new(plan);
-        return [.. layouts.OrderBy(k => k.Value.First).Select(k => Kind(k.Key, prepared.For(k.Key), models, k.Value.First, k.Value.Count))];
+        return [.. layouts.OrderBy(k => k.Value.First).Select(k => Kind(k.Key, prepared.For(k.Key), models, SourceBytes(plan.Reader, k.Value.First), k.Value.First, k.Value.Count))];
     }
 
-    private static FrameKind Kind(FrameLayout layout, PreparedFrame frame, NoiseModels models, int first, int count)
+    private static FrameKind Kind(FrameLayout layout, PreparedFrame frame, NoiseModels models, long sourceBytes, int first, int count)
     {
         FrameNoise? noise = models.For(first, layout);
         foreach (PreparedStep step in frame.Parts[0].Steps.Where(s => s.NeedsNoise && noise is null))
@@ -52,8 +53,11 @@ internal static class FrameKinds
         }
 
         string? text = noise?.Model is { } model ? $"{noise.Origin}: {model.Describe()}" : noise?.Origin;
-        return new FrameKind(layout, first, count, [.. frame.Parts[0].Steps.Select((s, i) => Step(s, frame, i))], frame.OutputType, text);
+        return new FrameKind(layout, first, count, [.. frame.Parts[0].Steps.Select((s, i) => Step(s, frame, i))], frame.OutputType, sourceBytes, text);
     }
+
+    private static long SourceBytes(IStackReader reader, int frame) =>
+        reader.RawBytes(frame) + (reader.DecodesInPlace(frame) ? 0 : reader.Layout(frame).StoredBytes);
 
     private static KindStep Step(PreparedStep step, PreparedFrame frame, int index) => new(
         step.Planned, step.Type, step.Step.Resolved, step.Step.Reach, frame.Parts.Max(p => p.Steps[index].Step.ScratchBytes));

@@ -7,16 +7,19 @@ namespace Stacks.Pipeline;
 internal static class FrameMemory
 {
     /// <summary>
-    /// Bytes of one frame slot: raw, stored and result samples, flags twice, two planes of every work type that the
-    /// steps use, the same for a sub-lattice of a mosaic, the scratch of all steps and of measuring, and the encoded
-    /// bytes (taken as large as the result).
+    /// Bytes of one frame slot: raw and stored samples, those of the result where they are other ones, flags (twice where
+    /// decisions of steps are kept), two planes of every work type that the steps use, the same for a sub-lattice of a
+    /// mosaic, the scratch of all steps and of measuring, and the encoded bytes (taken as large as the result).
     /// </summary>
     public static long BytesOf(FrameKind kind, bool mask)
     {
         FrameLayout layout = kind.Layout;
         long samples = layout.Length;
         long result = samples * kind.Output.Size();
-        long bytes = (2 * layout.StoredBytes) + (2 * samples) + (2 * result) + (mask ? samples : 0);
+        bool isSelective = kind.Steps.Any(s => s.Step.Filter.Plugin.Kind == FilterKind.Selective);
+        bool isRewritten = kind.Output != layout.SampleType || kind.Steps.Any(s => s.Step.Filter.Plugin.Kind == FilterKind.Smoothing);
+        int flagPlanes = isSelective ? 2 : 1;
+        long bytes = kind.SourceBytes + (samples * flagPlanes) + (result * (isRewritten ? 2 : 1)) + (mask ? samples : 0);
 
         WorkType[] stepTypes = [.. kind.Steps.Select(s => s.WorkType).Distinct()];
         WorkType[] types = [.. stepTypes.Append(layout.WorkType).Distinct()];
@@ -28,7 +31,7 @@ internal static class FrameMemory
         else
         {
             FrameLayout part = PreparedSteps.Sublattice(layout, 0, 0);
-            bytes += part.Length * (2 + types.Sum(t => 2 * SizeOf(t)));
+            bytes += part.Length * (flagPlanes + types.Sum(t => 2 * SizeOf(t)));
         }
 
         return bytes + DifferenceNoise.ScratchBytes(layout.Width, layout.Height) + kind.Steps.Sum(s => s.ScratchBytes);

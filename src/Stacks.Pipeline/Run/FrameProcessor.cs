@@ -14,6 +14,8 @@ namespace Stacks.Pipeline;
 internal sealed class FrameProcessor(
     RunPlan plan, PreparedSteps steps, FrameMasks masks, NoiseModels noiseModels, IStackWriter writer, IRowBands bands, CancellationToken cancellation)
 {
+    private const int StripBytes = 1 << 17; // with its flags and values well inside a core's second cache
+
     /// <summary>Turns a slot's raw bytes into encoded ones, and accounts for what was done.</summary>
     public void Process(FrameSlot slot)
     {
@@ -22,22 +24,36 @@ internal sealed class FrameProcessor(
         FramePlanes frame = slot.Whole;
         StoredSamples source = StoredSamples.Of(layout.SampleType);
 
-        // Decode.
-        Span<byte> stored = slot.Stored.Resize(checked((int)layout.StoredBytes));
-        plan.Reader.Decode(slot.Frame, slot.Raw.Written, stored);
-        byte[] sourceDigest = SHA256.HashData(stored);
-
-        // Flags: what is known of every sample before any filter.
+        // What is known of every sample before any is looked at.
         frame.Shape(layout.Width, layout.Height);
         Span<SampleFlags> flags = frame.Flags.Samples;
         masks.Mark(slot.Frame, layout, flags);
         plan.Reader.MarkQuality(slot.Frame, frame.Flags);
-        source.Mark(stored, layout, flags);
-        FlagCounts found = FlagScan.CountAll(flags);
-        SampleSum fluxIn = source.Sum(stored, flags, layout.Width);
 
-        // Values and their noise.
-        frame.Start(layout.WorkType).Load(source, stored, layout.Transform);
+        // Decode, digest, flags, flux and values, a strip of rows after the other while it is in cache.
+        bool inPlace = plan.Reader.DecodesInPlace(slot.Frame);
+        Span<byte> stored = inPlace ? slot.Raw.Written : slot.Stored.Resize(checked((int)layout.StoredBytes));
+        if (!inPlace)
+            plan.Reader.Decode(slot.Frame, slot.Raw.Written, stored);
+        frame.Start(layout.WorkType);
+        SampleSum fluxIn = default;
+        int size = layout.SampleType.Size(), most = Math.Max(1, StripBytes / (layout.Width * size)) * layout.Width;
+        for (int first = 0; first < flags.Length; first += most)
+        {
+            int count = Math.Min(most, flags.Length - first);
+            Span<byte> strip = stored.Slice(first * size, count * size);
+            if (inPlace)
+                plan.Reader.Decode(slot.Frame, strip, strip);
+            slot.Digest.AppendData(strip);
+            source.Mark(strip, layout, flags.Slice(first, count));
+            fluxIn = source.Sum(fluxIn, strip, flags.Slice(first, count), layout.Width);
+            frame.Current.Load(source, strip, layout.Transform, first, count);
+        }
+
+        byte[] sourceDigest = slot.Digest.GetHashAndReset();
+        FlagCounts found = FlagScan.CountAll(flags);
+
+        // Level and noise.
         double level = frame.Current.Median(found.Missing > 0 ? flags : [], slot.Scratch);
         FrameNoise? noise = noiseModels.For(slot.Frame, layout);
         NoiseMeasurement before = frame.Current.MeasureNoise(
@@ -77,7 +93,7 @@ internal sealed class FrameProcessor(
         }
 
         // Account.
-        SampleSum fluxOut = changed ? target.Sum(result, flags, layout.Width) : fluxIn;
+        SampleSum fluxOut = changed ? target.Sum(default, result, flags, layout.Width) : fluxIn;
         double step = prepared.IsRewritten && frame.Current.Type >= WorkType.Float32 ? 0 : layout.QuantisationStep;
         NoiseMeasurement after = changed
             ? frame.Current.MeasureNoise(frame.Flags, layout.Lattice, step, null, slot.Scratch)

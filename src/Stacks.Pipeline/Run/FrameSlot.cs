@@ -1,19 +1,20 @@
 using System.Collections.Concurrent;
+using System.Security.Cryptography;
 using Stacks.Abstractions;
 using Stacks.Imaging;
 
 namespace Stacks.Pipeline;
 
 /// <summary>The memory that one frame in flight takes, and what is known of that frame. Used again for later frames.</summary>
-internal sealed class FrameSlot
+internal sealed class FrameSlot : IDisposable
 {
     /// <summary>Index of the frame.</summary>
     public int Frame { get; set; }
 
-    /// <summary>Bytes as they stand in the source.</summary>
+    /// <summary>Bytes as they stand in the source; where they decode in place, stored samples after that.</summary>
     public ByteBuffer Raw { get; } = new();
 
-    /// <summary>Stored samples of the source; patched in place when only selective steps apply.</summary>
+    /// <summary>Stored samples of the source where they do not stand in <see cref="Raw"/>; patched in place when only selective steps apply.</summary>
     public ByteBuffer Stored { get; } = new();
 
     /// <summary>Stored samples of the result, where they are not the source's patched.</summary>
@@ -24,6 +25,9 @@ internal sealed class FrameSlot
 
     /// <summary>One sub-lattice of it.</summary>
     public FramePlanes Part { get; } = new();
+
+    /// <summary>Digest of the stored samples, taken piece by piece.</summary>
+    public IncrementalHash Digest { get; } = IncrementalHash.CreateHash(HashAlgorithmName.SHA256);
 
     /// <summary>Scratch for steps and measurements.</summary>
     public Scratch Scratch { get; } = new();
@@ -36,6 +40,8 @@ internal sealed class FrameSlot
 
     /// <summary>What the processor found out about the frame.</summary>
     public FrameAccount? Account { get; set; }
+
+    public void Dispose() => Digest.Dispose();
 }
 
 /// <summary>What the sink is told about a frame besides its bytes.</summary>
@@ -82,5 +88,10 @@ internal sealed class SlotPool(int capacity) : IDisposable
         places.Release();
     }
 
-    public void Dispose() => places.Dispose();
+    public void Dispose()
+    {
+        places.Dispose();
+        foreach (FrameSlot slot in free)
+            slot.Dispose();
+    }
 }

@@ -29,8 +29,8 @@ internal abstract class StoredSamples
     /// </summary>
     public abstract void Mark(ReadOnlySpan<byte> stored, FrameLayout layout, Span<SampleFlags> flags);
 
-    /// <summary>Sum over the samples that are not missing, rows of <paramref name="width"/> in order.</summary>
-    public abstract SampleSum Sum(ReadOnlySpan<byte> stored, ReadOnlySpan<SampleFlags> flags, int width);
+    /// <summary>A sum and that of the samples that are not missing, rows of <paramref name="width"/> in order.</summary>
+    public abstract SampleSum Sum(SampleSum sum, ReadOnlySpan<byte> stored, ReadOnlySpan<SampleFlags> flags, int width);
 
     /// <summary>values = zero + scale * stored; a 64-bit integer is rounded to the nearest double.</summary>
     public abstract void Load<T>(ReadOnlySpan<byte> stored, ValueTransform transform, Span<T> values)
@@ -109,10 +109,9 @@ internal sealed class StoredSamples<TStored> : StoredSamples
         return start;
     }
 
-    public override SampleSum Sum(ReadOnlySpan<byte> stored, ReadOnlySpan<SampleFlags> flags, int width)
+    public override SampleSum Sum(SampleSum sum, ReadOnlySpan<byte> stored, ReadOnlySpan<SampleFlags> flags, int width)
     {
         ReadOnlySpan<TStored> samples = MemoryMarshal.Cast<byte, TStored>(stored);
-        SampleSum sum = default;
         for (int start = 0; start < samples.Length; start += width)
         {
             ReadOnlySpan<TStored> row = samples.Slice(start, width);

@@ -25,8 +25,8 @@ internal abstract class WorkPlane
     /// <summary>Fits the plane to a shape; the values are then undefined.</summary>
     public abstract void Shape(int width, int height);
 
-    /// <summary>Takes its values from stored samples.</summary>
-    public abstract void Load(StoredSamples stored, ReadOnlySpan<byte> bytes, ValueTransform transform);
+    /// <summary>Takes the values of stored samples, the first of them at a place.</summary>
+    public abstract void Load(StoredSamples stored, ReadOnlySpan<byte> bytes, ValueTransform transform, int first, int count);
 
     /// <summary>See <see cref="StoredSamples.Store"/>.</summary>
     public abstract bool Store(StoredSamples stored, ValueTransform transform, Span<byte> bytes);
@@ -76,8 +76,8 @@ internal sealed class WorkPlane<T>(WorkType type) : WorkPlane
         Fit(ref values);
     }
 
-    public override void Load(StoredSamples stored, ReadOnlySpan<byte> bytes, ValueTransform transform) =>
-        stored.Load(bytes, transform, Values.Samples);
+    public override void Load(StoredSamples stored, ReadOnlySpan<byte> bytes, ValueTransform transform, int first, int count) =>
+        stored.Load(bytes, transform, Values.Samples.Slice(first, count));
 
     public override bool Store(StoredSamples stored, ValueTransform transform, Span<byte> bytes) =>
         stored.Store<T>(Values.Samples, transform, bytes);

@@ -132,6 +132,20 @@ public sealed class StackSeries : IStackReader
     }
 
     /// <inheritdoc/>
+    public bool DecodesInPlace(int frame)
+    {
+        using ReaderPool.Lease file = Lend(frame, out int own);
+        return file.Reader.DecodesInPlace(own);
+    }
+
+    /// <inheritdoc/>
+    public long RawBytes(int frame)
+    {
+        using ReaderPool.Lease file = Lend(frame, out int own);
+        return file.Reader.RawBytes(own);
+    }
+
+    /// <inheritdoc/>
     public bool MarkQuality(int frame, Plane<SampleFlags> flags)
     {
         using ReaderPool.Lease file = Lend(frame, out int own);
