@@ -20,7 +20,7 @@ internal sealed class MeanFormStep<T>(FrameLayout layout, int side, IReadOnlyLis
     public int? Reach => side / 2;
 
     /// <inheritdoc/>
-    public long ScratchBytes => 2 * Windows.ScratchBytes<double>(layout.Width, layout.Height, side / 2);
+    public long ScratchBytes => Environment.ProcessorCount * (WindowMoments.ScratchBytes<T>(side) + (sizeof(double) * (long)layout.Width));
 
     /// <inheritdoc/>
     public IReadOnlyList<ResolvedParameter> Resolved => resolved;
@@ -29,45 +29,18 @@ internal sealed class MeanFormStep<T>(FrameLayout layout, int side, IReadOnlyLis
     public void Apply(Plane<T> input, Plane<SampleFlags> flags, Plane<T> output, FrameContext context)
     {
         NoiseModel noise = context.Noise ?? throw new InvalidOperationException("local statistics need a noise model");
-        Windows<double> values = Windows.Computed<double>(
-            input.Width,
-            input.Height,
-            (y, row) =>
-            {
-                for (int x = 0; x < row.Length; x++)
-                    row[x] = (flags[x, y] & Outsiders) == 0 ? double.CreateTruncating(input[x, y]) : 0;
-            },
-            side / 2,
-            context.Scratch,
-            context.Bands);
-        Windows<double> masses = Windows.Computed<double>(
-            input.Width,
-            input.Height,
-            (y, row) =>
-            {
-                for (int x = 0; x < row.Length; x++)
-                    row[x] = (flags[x, y] & Outsiders) == 0 ? 1 : 0;
-            },
-            side / 2,
-            context.Scratch,
-            context.Bands);
-
+        SampleFlags without = context.HasMissing || context.HasSaturated ? Outsiders : SampleFlags.None;
+        WindowMoments<T> moments = new(input, flags, without, side, context.Scratch) { Lanes = Lanes };
         context.Bands.ForEach(input.Height, (first, end) =>
         {
-            Plane<double> moments = context.Scratch.Rent<double>(input.Width, 3);
-            Span<double> means = moments.Row(0), squares = moments.Row(1), counts = moments.Row(2);
-            for (int y = first; y < end; y++)
+            Plane<double> variances = context.Scratch.Rent<double>(input.Width, 1);
+            moments.Rows(first, end, (x, y, means, squares, counts) =>
             {
                 context.Cancellation.ThrowIfCancellationRequested();
-                DoubleLanes.Run(new WindowMoments(values, masses, side, y, means, squares, counts), input.Width, Lanes);
-                for (int x = 0; x < means.Length; x++)
-                {
-                    output[x, y] = (flags[x, y] & Outsiders) != 0 || counts[x] < Shrinkage.LeastCount
-                        ? input[x, y]
-                        : T.CreateTruncating(Shrinkage.Of(
-                            values[x, y], means[x], noise.Variance(x, y, means[x]), squares[x] / (counts[x] - 1)));
-                }
-            }
+                Span<double> noises = variances.Samples[..means.Length];
+                noise.VarianceByRow(x, y, means, noises);
+                Shrinkage.Row(input.Row(y).Slice(x, means.Length), means, noises, squares, counts, output.Row(y).Slice(x, means.Length), Lanes);
+            });
         });
     }
 }

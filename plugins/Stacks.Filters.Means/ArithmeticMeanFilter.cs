@@ -15,6 +15,10 @@ public sealed class ArithmeticMeanFilter : MeanFilter
     public override IReadOnlyList<ParameterSpec> Parameters { get; } = [Window];
 
     /// <inheritdoc/>
-    public override IFilterStep Prepare(FrameLayout layout, WorkType workType, ParameterValues values) =>
-        OverWindow(layout, workType, values, new Mean());
+    public override IFilterStep Prepare(FrameLayout layout, WorkType workType, ParameterValues values)
+    {
+        int side = values.Integer(Window.Name);
+        ResolvedParameter[] resolved = [new(Window.Name, values[Window.Name].ToString(), Window.Unit)];
+        return workType == WorkType.Float64 ? new ArithmeticMeanStep<double>(side, resolved) : new ArithmeticMeanStep<float>(side, resolved);
+    }
 }

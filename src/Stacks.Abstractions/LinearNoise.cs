@@ -78,6 +78,16 @@ public sealed class LinearNoise : NoiseModel
         (Slope * Vector512.Max(level - Vector512.Create(Pedestal), Vector512<double>.Zero)) + Vector512.Create(Floor);
 
     /// <inheritdoc/>
+    public override void VarianceByRow(int x, int y, ReadOnlySpan<double> levels, Span<double> variances)
+    {
+        int i = 0;
+        for (; i <= levels.Length - Vector512<double>.Count; i += Vector512<double>.Count)
+            Variance(Vector512.Create(levels[i..])).CopyTo(variances[i..]);
+        for (; i < levels.Length; i++)
+            variances[i] = Variance(x + i, y, levels[i]);
+    }
+
+    /// <inheritdoc/>
     public override double Stabilise(int x, int y, double value)
     {
         double signal = value - Pedestal;

@@ -21,7 +21,7 @@ public abstract class NoiseModel
     /// <summary>The least variance the model gives anywhere: a bound for quick tests, in value units squared.</summary>
     public abstract double LeastVariance { get; }
 
-    /// <summary><see cref="Variance"/> for samples of a row.</summary>
+    /// <summary><see cref="Variance"/> for samples of a row, rounded to float.</summary>
     /// <param name="x">Column in the frame of the first.</param>
     /// <param name="y">Row in the frame.</param>
     /// <param name="levels">Levels, one for each column from <paramref name="x"/>.</param>
@@ -30,6 +30,17 @@ public abstract class NoiseModel
     {
         for (int i = 0; i < levels.Length; i++)
             variances[i] = (float)Variance(x + i, y, levels[i]);
+    }
+
+    /// <summary><see cref="Variance"/> for neighbouring samples of a row; the same bits.</summary>
+    /// <param name="x">Column of the first in the frame.</param>
+    /// <param name="y">Row in the frame.</param>
+    /// <param name="levels">Levels, one for each column from <paramref name="x"/> on.</param>
+    /// <param name="variances">Receives as many variances.</param>
+    public virtual void VarianceByRow(int x, int y, ReadOnlySpan<double> levels, Span<double> variances)
+    {
+        for (int i = 0; i < levels.Length; i++)
+            variances[i] = Variance(x + i, y, levels[i]);
     }
 
     /// <summary><see cref="Stabilise"/> for every sample of a row.</summary>

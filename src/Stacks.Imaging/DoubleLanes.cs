@@ -1,5 +1,6 @@
 using System.Runtime.CompilerServices;
 using System.Runtime.Intrinsics;
+using System.Runtime.Intrinsics.X86;
 
 namespace Stacks.Imaging;
 
@@ -55,10 +56,21 @@ public readonly struct DoubleLanes512(Vector512<double> lanes) : IDoubleLanes<Do
     public static DoubleLanes512 Load(ref double start, nint offset) => new(Vector512.LoadUnsafe(ref Unsafe.Add(ref start, offset)));
 
     /// <inheritdoc/>
+    public static DoubleLanes512 Load(ref float start, nint offset) =>
+        new(Vector512.WidenLower(Vector256.LoadUnsafe(ref Unsafe.Add(ref start, offset)).ToVector512Unsafe()));
+
+    /// <inheritdoc/>
     public void Store(ref double start, nint offset) => lanes.StoreUnsafe(ref Unsafe.Add(ref start, offset));
 
     /// <inheritdoc/>
+    public void Store(ref float start, nint offset) =>
+        (Avx512F.IsSupported ? Avx512F.ConvertToVector256Single(lanes) : Vector512.Narrow(lanes, lanes).GetLower()).StoreUnsafe(ref Unsafe.Add(ref start, offset));
+
+    /// <inheritdoc/>
     public static DoubleLanes512 Min(DoubleLanes512 a, DoubleLanes512 b) => new(Vector512.MinNative(a.lanes, b.lanes));
+
+    /// <inheritdoc/>
+    public static bool AllAtLeast(DoubleLanes512 a, DoubleLanes512 b) => Vector512.GreaterThanOrEqualAll(a.lanes, b.lanes);
 
     /// <inheritdoc/>
     public static DoubleLanes512 operator +(DoubleLanes512 a, DoubleLanes512 b) => new(a.lanes + b.lanes);
@@ -88,10 +100,21 @@ public readonly struct DoubleLanes256(Vector256<double> lanes) : IDoubleLanes<Do
     public static DoubleLanes256 Load(ref double start, nint offset) => new(Vector256.LoadUnsafe(ref Unsafe.Add(ref start, offset)));
 
     /// <inheritdoc/>
+    public static DoubleLanes256 Load(ref float start, nint offset) =>
+        new(Vector256.WidenLower(Vector128.LoadUnsafe(ref Unsafe.Add(ref start, offset)).ToVector256Unsafe()));
+
+    /// <inheritdoc/>
     public void Store(ref double start, nint offset) => lanes.StoreUnsafe(ref Unsafe.Add(ref start, offset));
 
     /// <inheritdoc/>
+    public void Store(ref float start, nint offset) =>
+        (Avx.IsSupported ? Avx.ConvertToVector128Single(lanes) : Vector256.Narrow(lanes, lanes).GetLower()).StoreUnsafe(ref Unsafe.Add(ref start, offset));
+
+    /// <inheritdoc/>
     public static DoubleLanes256 Min(DoubleLanes256 a, DoubleLanes256 b) => new(Vector256.MinNative(a.lanes, b.lanes));
+
+    /// <inheritdoc/>
+    public static bool AllAtLeast(DoubleLanes256 a, DoubleLanes256 b) => Vector256.GreaterThanOrEqualAll(a.lanes, b.lanes);
 
     /// <inheritdoc/>
     public static DoubleLanes256 operator +(DoubleLanes256 a, DoubleLanes256 b) => new(a.lanes + b.lanes);
@@ -121,10 +144,20 @@ public readonly struct DoubleLanes128(Vector128<double> lanes) : IDoubleLanes<Do
     public static DoubleLanes128 Load(ref double start, nint offset) => new(Vector128.LoadUnsafe(ref Unsafe.Add(ref start, offset)));
 
     /// <inheritdoc/>
+    public static DoubleLanes128 Load(ref float start, nint offset) =>
+        new(Vector128.WidenLower(Vector64.LoadUnsafe(ref Unsafe.Add(ref start, offset)).ToVector128Unsafe()));
+
+    /// <inheritdoc/>
     public void Store(ref double start, nint offset) => lanes.StoreUnsafe(ref Unsafe.Add(ref start, offset));
 
     /// <inheritdoc/>
+    public void Store(ref float start, nint offset) => Vector128.Narrow(lanes, lanes).GetLower().StoreUnsafe(ref Unsafe.Add(ref start, offset));
+
+    /// <inheritdoc/>
     public static DoubleLanes128 Min(DoubleLanes128 a, DoubleLanes128 b) => new(Vector128.MinNative(a.lanes, b.lanes));
+
+    /// <inheritdoc/>
+    public static bool AllAtLeast(DoubleLanes128 a, DoubleLanes128 b) => Vector128.GreaterThanOrEqualAll(a.lanes, b.lanes);
 
     /// <inheritdoc/>
     public static DoubleLanes128 operator +(DoubleLanes128 a, DoubleLanes128 b) => new(a.lanes + b.lanes);
@@ -154,10 +187,19 @@ public readonly struct DoubleLane(double lane) : IDoubleLanes<DoubleLane>
     public static DoubleLane Load(ref double start, nint offset) => new(Unsafe.Add(ref start, offset));
 
     /// <inheritdoc/>
+    public static DoubleLane Load(ref float start, nint offset) => new(Unsafe.Add(ref start, offset));
+
+    /// <inheritdoc/>
     public void Store(ref double start, nint offset) => Unsafe.Add(ref start, offset) = lane;
 
     /// <inheritdoc/>
+    public void Store(ref float start, nint offset) => Unsafe.Add(ref start, offset) = (float)lane;
+
+    /// <inheritdoc/>
     public static DoubleLane Min(DoubleLane a, DoubleLane b) => new(a.lane < b.lane ? a.lane : b.lane);
+
+    /// <inheritdoc/>
+    public static bool AllAtLeast(DoubleLane a, DoubleLane b) => a.lane >= b.lane;
 
     /// <inheritdoc/>
     public static DoubleLane operator +(DoubleLane a, DoubleLane b) => new(a.lane + b.lane);

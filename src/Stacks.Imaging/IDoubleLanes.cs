@@ -17,11 +17,20 @@ public interface IDoubleLanes<TSelf>
     /// <summary>The <see cref="Count"/> samples from a place on.</summary>
     static abstract TSelf Load(ref double start, nint offset);
 
+    /// <summary>The <see cref="Count"/> samples from a place on.</summary>
+    static abstract TSelf Load(ref float start, nint offset);
+
     /// <summary>Writes <see cref="Count"/> samples from a place on.</summary>
     void Store(ref double start, nint offset);
 
+    /// <summary>Writes <see cref="Count"/> samples from a place on, rounded to nearest.</summary>
+    void Store(ref float start, nint offset);
+
     /// <summary>The smaller in every lane; no lane is NaN.</summary>
     static abstract TSelf Min(TSelf a, TSelf b);
+
+    /// <summary>True when a is at least b in every lane; a lane with NaN is not.</summary>
+    static abstract bool AllAtLeast(TSelf a, TSelf b);
 
     /// <summary>Sum.</summary>
     static abstract TSelf operator +(TSelf a, TSelf b);

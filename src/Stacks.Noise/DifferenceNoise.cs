@@ -30,7 +30,7 @@ public static class DifferenceNoise
     /// <summary>Bytes of scratch that measuring a frame rents, at most.</summary>
     public static long ScratchBytes(int width, int height) =>
         (2 * sizeof(double) * Math.Min((long)width * height, MostResponses + (2L * width)))
-        + ((sizeof(double) + (2 * sizeof(float))) * (long)width)
+        + (3 * sizeof(double) * (long)width)
         + (sizeof(int) * (long)RankSelection.Counts);
 
     /// <summary>Measures a frame.</summary>
@@ -56,8 +56,8 @@ public static class DifferenceNoise
         Span<double> responses = scratch.Rent<double>(visited * columns, 1).Samples;
         Span<double> ratios = model is null ? [] : scratch.Rent<double>(visited * columns, 1).Samples;
         Span<double> row = scratch.Rent<double>(width, 1).Samples;
-        Span<float> levels = scratch.Rent<float>(width, 1).Samples;
-        Span<float> variances = scratch.Rent<float>(width, 1).Samples;
+        Span<double> levels = scratch.Rent<double>(width, 1).Samples;
+        Span<double> variances = scratch.Rent<double>(width, 1).Samples;
         Span<int> counts = scratch.Rent<int>(RankSelection.Counts, 1).Samples;
 
         int count = 0;
@@ -89,7 +89,7 @@ public static class DifferenceNoise
     /// <summary>Responses of one row and the means of their nine samples; NaN and 0 where a sample is unusable.</summary>
     [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     private static void Respond<T>(
-        Plane<T> values, Plane<SampleFlags> flags, int stepX, int stepY, int y, Span<double> responses, Span<float> levels)
+        Plane<T> values, Plane<SampleFlags> flags, int stepX, int stepY, int y, Span<double> responses, Span<double> levels)
         where T : unmanaged, INumber<T>
     {
         ReadOnlySpan<T> above = values.Row(y - stepY), here = values.Row(y), below = values.Row(y + stepY);
@@ -110,7 +110,7 @@ public static class DifferenceNoise
             double sides = Sum(above[x], here[w], here[e], below[x]);
             double centre = double.CreateTruncating(here[x]);
             responses[x] = (corners - (2 * sides) + (4 * centre)) / 6;
-            levels[x] = (float)((corners + sides + centre) / 9);
+            levels[x] = (corners + sides + centre) / 9;
         }
     }
 

@@ -11,7 +11,8 @@ internal static class LocalStatisticsRatios
     {
         Plane<float> input = scene.Plane<float>();
         Action copy = Copy(input);
-        yield return Ratio.Of("local statistics, mean form 7x7, f32, to a memory copy of the frame", Goal.AtMost(6), MeanForm(input, 7), copy);
+        foreach (int side in new[] { 3, 7, 15, 31 })
+            yield return Ratio.Of($"local statistics, mean form {side}x{side}, f32, to a memory copy of the frame", Goal.AtMost(6), MeanForm(input, side), copy);
         yield return Ratio.Of("local statistics, mean form 31x31, f32, to 7x7", Goal.AtMost(1.1), MeanForm(input, 31), MeanForm(input, 7));
         yield return Ratio.Of(
             "local statistics, mean form 7x7, f32, 0.1 % missing, to none missing", Goal.AtMost(1.15), MeanForm(input, 7, Scene.SomeMissing()), MeanForm(input, 7));

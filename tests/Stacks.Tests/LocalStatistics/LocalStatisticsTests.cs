@@ -96,25 +96,20 @@ public class LocalStatisticsTests
     {
         const int side = 33;
         double[] series = Series(name);
-        Scratch scratch = new();
-        Windows<double> values = Windows.Computed<double>(
-            side, side, (y, row) => Fill(row, x => ((y * side) + x) < series.Length ? series[(y * side) + x] : 0), side / 2, scratch, SerialBands.Instance);
-        Windows<double> masses = Windows.Computed<double>(
-            side, side, (y, row) => Fill(row, x => ((y * side) + x) < series.Length ? 1 : 0), side / 2, scratch, SerialBands.Instance);
+
+        // The series starts at the centre, whose window is the plane.
+        int Place(int x, int y) => ((y * side) + x + ((side * side) - (side * side / 2))) % (side * side);
+        Plane<double> values = FilterRun.PlaneOf(side, side, (x, y) => Place(x, y) < series.Length ? series[Place(x, y)] : double.NaN);
+        Plane<SampleFlags> flags = FilterRun.PlaneOf(side, side, (x, y) => Place(x, y) < series.Length ? SampleFlags.None : SampleFlags.Missing);
         foreach (int lanes in new[] { 1, 2, 4, 8 })
         {
-            double[] means = new double[side], squares = new double[side], counts = new double[side];
-            DoubleLanes.Run(new WindowMoments(values, masses, side, side / 2, means, squares, counts), side, lanes);
-            Assert.Equal(series.Length, counts[side / 2]);
-            Assert.Equal(1, means[side / 2] / mean, 1e-8);
-            Assert.Equal(1, Math.Sqrt(squares[side / 2] / (series.Length - 1)) / deviation, 1e-8);
+            new WindowMoments<double>(values, flags, SampleFlags.Missing, side, new Scratch()) { Lanes = lanes }.Rows(side / 2, (side / 2) + 1, (_, _, means, squares, counts) =>
+            {
+                Assert.Equal(series.Length, counts[side / 2]);
+                Assert.Equal(1, means[side / 2] / mean, 1e-8);
+                Assert.Equal(1, Math.Sqrt(squares[side / 2] / (series.Length - 1)) / deviation, 1e-8);
+            });
         }
-    }
-
-    private static void Fill(Span<double> row, Func<int, double> sample)
-    {
-        for (int x = 0; x < row.Length; x++)
-            row[x] = sample(x);
     }
 
     private static double[] Series(string name) =>
