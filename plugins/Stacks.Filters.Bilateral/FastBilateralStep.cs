@@ -94,28 +94,10 @@ internal sealed class FastBilateralStep<T>(
         }
 
         Plane<float> factors = context.Scratch.Rent<float>(grid.Width, grid.Height);
-        frame.Apply<RowSum, TLanes>(default, context, (y, weights, _) =>
-        {
-            Span<float> c = factors.Row(y);
-            for (int x = 0; x < c.Length; x++)
-                c[x] = weights[x] > 0 ? 1 / MathF.Sqrt(weights[x]) : 0;
-        });
+        frame.Apply<RowSum, TLanes>(default, context, (y, sums, _) => FactorUpdates.Start(sums, factors.Row(y)));
         for (int round = 0; round < Rounds; round++)
-        {
-            frame.Apply<Balanced, TLanes>(factors, context, (y, weights, _) =>
-            {
-                Span<float> c = factors.Row(y);
-                for (int x = 0; x < c.Length; x++)
-                    c[x] = weights[x] > 0 ? MathF.Sqrt(c[x] / weights[x]) : 0;
-            });
-        }
-
-        frame.Apply<Balanced, TLanes>(factors, context, (y, weights, _) =>
-        {
-            Span<float> c = factors.Row(y);
-            for (int x = 0; x < c.Length; x++)
-                c[x] /= Math.Max(1, c[x] * (weights[x] - c[x]));
-        });
+            frame.Apply<Balanced, TLanes>(factors, context, (y, sums, _) => FactorUpdates.Balance(sums, factors.Row(y)));
+        frame.Apply<Balanced, TLanes>(factors, context, (y, sums, _) => FactorUpdates.Clamp(sums, factors.Row(y)));
         Plane<double> totals = context.Scratch.Rent<double>(2, grid.Height);
         frame.Apply<Exchange, TLanes>(factors, context, (y, _, exchanges) =>
         {

@@ -41,6 +41,7 @@ internal sealed class GridGather<T, TForm, TLanes>(LevelFrame<T> frame, Plane<fl
         int columns = Math.Min(grid.Pitch, grid.Width - left), rows = Math.Min(grid.Pitch, grid.Height - top);
         double origin = slot < 0 ? 0 : slots.Value(slot);
         int alone = 0;
+        LevelWeights.LevelTable table = weights.Table;
 
         TLanes offsets = TForm.Values && slot >= 0 ? slots.Sixteen<TLanes>(slot, origin) : TLanes.All(0);
         ref float spline = ref MemoryMarshal.GetArrayDataReference(grid.Spline);
@@ -84,7 +85,7 @@ internal sealed class GridGather<T, TForm, TLanes>(LevelFrame<T> frame, Plane<fl
                     continue;
                 }
 
-                TLanes weight = weights.Of<TLanes>(sample, above);
+                TLanes weight = table.Of<TLanes>(sample, above);
                 ref float b = ref Unsafe.Add(ref spline, Support * x);
                 TLanes b0 = TLanes.All(b), b1 = TLanes.All(Unsafe.Add(ref b, 1)), b2 = TLanes.All(Unsafe.Add(ref b, 2)), b3 = TLanes.All(Unsafe.Add(ref b, 3));
                 TLanes total = TLanes.MultiplyAdd(w3, b3, TLanes.MultiplyAdd(w2, b2, TLanes.MultiplyAdd(w1, b1, w0 * b0))) * weight;
@@ -120,7 +121,7 @@ internal sealed class GridGather<T, TForm, TLanes>(LevelFrame<T> frame, Plane<fl
                 exchange = TLanes.MultiplyAdd(TLanes.Load(ref node, from + nodes.Slots), b, exchange);
         }
 
-        TLanes weight = weights.Of<TLanes>(sample, 0);
+        TLanes weight = weights.Of<TLanes>(sample);
         total *= weight;
         sums.Buffer[at] += total.Sum();
         if (TForm.Values)

@@ -1,3 +1,4 @@
+using System.Runtime.CompilerServices;
 using Stacks.Abstractions;
 
 namespace Stacks.Filters.Bilateral;
@@ -89,38 +90,58 @@ internal sealed class GridNodes(SpatialGrid grid, double norm, IScratch scratch)
 
             for (int node = 0; node < nodes; node++)
             {
-                Span<float> target = Sums.Buffer.AsSpan((int)(start + (node * step) + from), count);
-                int part = 0;
-                for (; part + LevelWeights.Lanes <= count; part += LevelWeights.Lanes)
-                    BlurAt<TLanes>(line, node + margin, part).Store(ref target[0], part);
-                for (; part < count; part++)
-                    target[part] = BlurAt(line, node + margin, part);
+                ref float target = ref Sums.Buffer[(int)(start + (node * step) + from)];
+                ref float middle = ref line.Row(node + margin)[0];
+                if (count == Strip)
+                {
+                    BlurStrip<TLanes>(ref middle, ref target);
+                    continue;
+                }
+
+                for (int part = 0; part < count; part += LevelWeights.Lanes)
+                    BlurAt<TLanes>(ref Unsafe.Add(ref middle, part)).Store(ref target, part);
             }
         }
     }
 
-    private TLanes BlurAt<TLanes>(Plane<float> line, int node, int part)
+    /// <summary>Four vectors at once, which share the taps.</summary>
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
+    private void BlurStrip<TLanes>(ref float middle, ref float target)
         where TLanes : struct, ILevelLanes<TLanes>
     {
-        ref float middle = ref line.Row(node)[part];
+        const int second = LevelWeights.Lanes, third = 2 * second, fourth = 3 * second;
+        TLanes tap = TLanes.All(taps[0]);
+        TLanes a = TLanes.Load(ref middle, 0) * tap, b = TLanes.Load(ref middle, second) * tap;
+        TLanes c = TLanes.Load(ref middle, third) * tap, d = TLanes.Load(ref middle, fourth) * tap;
+        for (int n = 1; n < taps.Length; n++)
+        {
+            tap = TLanes.All(taps[n]);
+            nint before = -n * Strip, after = n * Strip;
+            a = TLanes.MultiplyAdd(TLanes.Load(ref middle, before), tap, a);
+            b = TLanes.MultiplyAdd(TLanes.Load(ref middle, before + second), tap, b);
+            c = TLanes.MultiplyAdd(TLanes.Load(ref middle, before + third), tap, c);
+            d = TLanes.MultiplyAdd(TLanes.Load(ref middle, before + fourth), tap, d);
+            a = TLanes.MultiplyAdd(TLanes.Load(ref middle, after), tap, a);
+            b = TLanes.MultiplyAdd(TLanes.Load(ref middle, after + second), tap, b);
+            c = TLanes.MultiplyAdd(TLanes.Load(ref middle, after + third), tap, c);
+            d = TLanes.MultiplyAdd(TLanes.Load(ref middle, after + fourth), tap, d);
+        }
+
+        a.Store(ref target, 0);
+        b.Store(ref target, second);
+        c.Store(ref target, third);
+        d.Store(ref target, fourth);
+    }
+
+    private TLanes BlurAt<TLanes>(ref float middle)
+        where TLanes : struct, ILevelLanes<TLanes>
+    {
         TLanes sum = TLanes.Load(ref middle, 0) * TLanes.All(taps[0]);
         for (int n = 1; n < taps.Length; n++)
         {
             TLanes tap = TLanes.All(taps[n]);
             sum = TLanes.MultiplyAdd(TLanes.Load(ref middle, -n * Strip), tap, sum);
             sum = TLanes.MultiplyAdd(TLanes.Load(ref middle, n * Strip), tap, sum);
-        }
-
-        return sum;
-    }
-
-    private float BlurAt(Plane<float> line, int node, int part)
-    {
-        float sum = line[part, node] * taps[0];
-        for (int n = 1; n < taps.Length; n++)
-        {
-            sum = MathF.FusedMultiplyAdd(line[part, node - n], taps[n], sum);
-            sum = MathF.FusedMultiplyAdd(line[part, node + n], taps[n], sum);
         }
 
         return sum;

@@ -42,6 +42,7 @@ internal sealed class GridSpread<T, TForm, TLanes>(LevelFrame<T> frame, Plane<fl
         int columns = Math.Min(grid.Pitch, grid.Width - left), rows = Math.Min(grid.Pitch, grid.Height - top);
         double origin = slot < 0 ? 0 : slots.Value(slot);
         int alone = 0;
+        LevelWeights.LevelTable table = weights.Table;
 
         Span<float> tile = stackalloc float[Support * Support * 2 * Lanes];
         tile.Clear();
@@ -66,7 +67,7 @@ internal sealed class GridSpread<T, TForm, TLanes>(LevelFrame<T> frame, Plane<fl
                     continue;
                 }
 
-                TLanes weight = weights.Of<TLanes>(sample, above);
+                TLanes weight = table.Of<TLanes>(sample, above);
                 if (TForm.Factors)
                     weight *= TLanes.All(Unsafe.Add(ref c, x));
                 ref float b = ref Unsafe.Add(ref spline, Support * x);
@@ -132,7 +133,7 @@ internal sealed class GridSpread<T, TForm, TLanes>(LevelFrame<T> frame, Plane<fl
         int slot = slots.SixteenAt(sample >> LevelWeights.FractionBits);
         if (slot < 0)
             return;
-        TLanes weight = weights.Of<TLanes>(sample, 0), exchange = weight;
+        TLanes weight = weights.Of<TLanes>(sample), exchange = weight;
         if (TForm.Factors)
             weight *= TLanes.All(factors.Buffer[at]);
         if (TForm.Values)

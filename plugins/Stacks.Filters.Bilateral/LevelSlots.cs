@@ -54,7 +54,7 @@ internal sealed class LevelSlots
     /// <summary>Levels of more members than that: those that need a slot.</summary>
     public int Thick { get; }
 
-    /// <summary>Slots of this batch.</summary>
+    /// <summary>Slots of this batch, a multiple of sixteen.</summary>
     public int Count { get; private set; }
 
     /// <summary>1 for slots whose level is in this batch, 0 for idle ones.</summary>
@@ -94,6 +94,8 @@ internal sealed class LevelSlots
         }
 
         next = level;
+        for (; Count % LevelWeights.Lanes != 0; Count++)
+            (values.Samples[Count], Busy.Samples[Count]) = (0, 0);
         return Count > 0;
     }
 

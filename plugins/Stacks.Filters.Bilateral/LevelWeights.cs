@@ -66,15 +66,28 @@ internal sealed class LevelWeights
     /// <summary>D / (sqrt(pi / 2) s): what makes the sum over levels 1 for equal samples.</summary>
     public double Norm => Spacing / Math.Sqrt(Math.PI / 2);
 
-    /// <summary>The weights of a guide sample on sixteen levels, the first of which lies <paramref name="shift"/> levels below its own first.</summary>
-    [MethodImpl(MethodImplOptions.AggressiveInlining)]
-    public TLanes Of<TLanes>(int guide, int shift)
-        where TLanes : struct, ILevelLanes<TLanes>
+    /// <summary>The table, for reading.</summary>
+    public LevelTable Table => new(ref MemoryMarshal.GetArrayDataReference(table), stride, Room);
+
+    /// <summary>The weights of a guide sample on the sixteen levels from its own first on.</summary>
+    public TLanes Of<TLanes>(int guide)
+        where TLanes : struct, ILevelLanes<TLanes> => Table.Of<TLanes>(guide, 0);
+
+    /// <summary>What a kernel holds of the table in its loop.</summary>
+    public readonly ref struct LevelTable(ref float start, int stride, int room)
     {
-        nint at = (((guide >> BetweenBits) & ((1 << PlaceBits) - 1)) * stride) + Room - shift;
-        ref float start = ref MemoryMarshal.GetArrayDataReference(table);
-        TLanes low = TLanes.Load(ref start, at), high = TLanes.Load(ref start, at + stride);
-        TLanes between = TLanes.All((guide & ((1 << BetweenBits) - 1)) * (1f / (1 << BetweenBits)));
-        return TLanes.MultiplyAdd(high - low, between, low);
+        private readonly ref float start = ref start;
+        private readonly nint stride = stride, room = room;
+
+        /// <summary>The weights of a guide sample on sixteen levels, the first of which lies <paramref name="shift"/> levels below its own first.</summary>
+        [MethodImpl(MethodImplOptions.AggressiveInlining)]
+        public TLanes Of<TLanes>(int guide, int shift)
+            where TLanes : struct, ILevelLanes<TLanes>
+        {
+            nint at = (((guide >> BetweenBits) & ((1 << PlaceBits) - 1)) * stride) + room - shift;
+            TLanes low = TLanes.Load(ref start, at), high = TLanes.Load(ref start, at + stride);
+            TLanes between = TLanes.All((guide & ((1 << BetweenBits) - 1)) * (1f / (1 << BetweenBits)));
+            return TLanes.MultiplyAdd(high - low, between, low);
+        }
     }
 }

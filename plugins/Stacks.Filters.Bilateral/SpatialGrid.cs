@@ -78,8 +78,8 @@ internal sealed class SpatialGrid
     /// <summary>exp(-d^2 / 2 ss^2) for distances d of whole samples, to 6 ss.</summary>
     public double[] Near { get; }
 
-    /// <summary>Slots of range levels in memory at once: what 256 MB hold.</summary>
-    public int MostSlots => (int)Math.Clamp((1L << 28) / (2L * sizeof(float) * NodesX * NodesY), 3 * LevelWeights.Lanes, 1024);
+    /// <summary>Slots of range levels in memory at once, a multiple of sixteen: what 256 MB hold.</summary>
+    public int MostSlots => (int)Math.Clamp((1L << 28) / (2L * sizeof(float) * NodesX * NodesY), 3 * LevelWeights.Lanes, 1024) / LevelWeights.Lanes * LevelWeights.Lanes;
 
     /// <summary>
     /// Members up to which a level costs less pair by pair than on the grid: pairs grow with the square, the grid's work

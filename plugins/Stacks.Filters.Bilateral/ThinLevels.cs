@@ -93,7 +93,7 @@ internal sealed class ThinLevels<T>
                 rows.Samples[member] = y;
                 values.Samples[member] = double.CreateTruncating(input[x, y]);
                 Span<float> part = parts.Row(member);
-                weights.Of<LevelLanes512>(guide[x, y], 0).Store(ref part[0], 0);
+                weights.Of<LevelLanes512>(guide[x, y]).Store(ref part[0], 0);
                 for (int j = 0; j < weights.Count; j++)
                 {
                     if (slots.Members.Samples[level + j] > slots.Thin)
@@ -111,13 +111,16 @@ internal sealed class ThinLevels<T>
         own.Clear();
         parts.Row(p).CopyTo(own[Lanes..]);
         int x = columns.Samples[p], y = rows.Samples[p], level = levels.Samples[p];
+        int reach = grid.Near.Length - 1;
         double value = values.Samples[p], sum = 0, exchange = 0;
         for (int other = level - weights.Count + 1; other < level + weights.Count; other++)
         {
-            for (int q = starts.Samples[other]; q < starts.Samples[other + 1]; q++)
+            // Members of a level stand tile row by tile row.
+            int end = starts.Samples[other + 1], lastTileRow = (y + reach) / grid.Pitch;
+            for (int q = FirstFrom((y - reach) / grid.Pitch, starts.Samples[other], end); q < end && rows.Samples[q] / grid.Pitch <= lastTileRow; q++)
             {
                 int right = Math.Abs(columns.Samples[q] - x), down = Math.Abs(rows.Samples[q] - y);
-                if (right >= grid.Near.Length || down >= grid.Near.Length)
+                if (right > reach || down > reach)
                     continue;
                 LevelLanes512 common = LevelLanes512.Load(ref own[0], Lanes + other - level) * LevelLanes512.Load(ref parts.Row(q)[0], 0);
                 double weight = grid.Near[right] * grid.Near[down] * common.Sum() * weights.Norm;
@@ -132,5 +135,17 @@ internal sealed class ThinLevels<T>
         sums[x, y] = (float)sum;
         if (TForm.Values)
             exchanges[x, y] = (float)exchange;
+    }
+
+    /// <summary>The first of the members [start, end) of a level that stands in a tile row or below it.</summary>
+    private int FirstFrom(int tileRow, int start, int end)
+    {
+        while (start < end)
+        {
+            int middle = (start + end) / 2;
+            (start, end) = rows.Samples[middle] / grid.Pitch < tileRow ? (middle + 1, end) : (start, middle);
+        }
+
+        return start;
     }
 }

@@ -1,4 +1,5 @@
 using System.Globalization;
+using System.Numerics;
 using System.Runtime.Intrinsics;
 
 namespace Stacks.Abstractions;
@@ -92,6 +93,22 @@ public sealed class LinearNoise : NoiseModel
     {
         double signal = value - Pedestal;
         return signal >= 0 ? 2 * signal / (Math.Sqrt((Slope * signal) + c) + rootC) : signal / rootC;
+    }
+
+    /// <inheritdoc/>
+    public override void StabiliseByRow(int y, ReadOnlySpan<double> values, Span<double> stabilised)
+    {
+        int x = 0;
+        Vector<double> pedestals = new(Pedestal), slopes = new(Slope), floors = new(c), roots = new(rootC);
+        for (; x <= values.Length - Vector<double>.Count; x += Vector<double>.Count)
+        {
+            Vector<double> signal = new Vector<double>(values[x..]) - pedestals;
+            Vector<double> above = (signal + signal) / (Vector.SquareRoot((slopes * signal) + floors) + roots);
+            Vector.ConditionalSelect(Vector.GreaterThanOrEqual(signal, Vector<double>.Zero), above, signal / roots).CopyTo(stabilised[x..]);
+        }
+
+        for (; x < values.Length; x++)
+            stabilised[x] = Stabilise(x, y, values[x]);
     }
 
     /// <inheritdoc/>
