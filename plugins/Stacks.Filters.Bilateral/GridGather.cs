@@ -16,6 +16,7 @@ internal sealed class GridGather<T, TForm, TLanes>(LevelFrame<T> frame, Plane<fl
     where TLanes : struct, ILevelLanes<TLanes>
 {
     private const int Support = SpatialGrid.Support;
+    private const int LonerBits = 16;
 
     private readonly SpatialGrid grid = frame.Grid;
     private readonly LevelWeights weights = frame.Weights;
@@ -80,7 +81,7 @@ internal sealed class GridGather<T, TForm, TLanes>(LevelFrame<T> frame, Plane<fl
                 int above = (sample >> LevelWeights.FractionBits) - crowd;
                 if ((uint)above >= room)
                 {
-                    loners[alone] = (y * grid.Pitch) + x;
+                    loners[alone] = (y << LonerBits) + x;
                     alone += sample >= 0 ? 1 : 0;
                     continue;
                 }
@@ -100,9 +101,10 @@ internal sealed class GridGather<T, TForm, TLanes>(LevelFrame<T> frame, Plane<fl
         }
 
         for (int i = 0; i < alone; i++)
-            GatherLoner(tileX, tileY, loners[i] % grid.Pitch, loners[i] / grid.Pitch);
+            GatherLoner(tileX, tileY, loners[i] & ((1 << LonerBits) - 1), loners[i] >> LonerBits);
     }
 
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     private void GatherLoner(int tileX, int tileY, int x, int y)
     {
         int at = (((tileY * grid.Pitch) + y) * grid.Width) + (tileX * grid.Pitch) + x;
@@ -111,14 +113,22 @@ internal sealed class GridGather<T, TForm, TLanes>(LevelFrame<T> frame, Plane<fl
         if (slot < 0)
             return;
         TLanes total = TLanes.All(0), exchange = total;
-        ref float node = ref MemoryMarshal.GetArrayDataReference(nodes.Sums.Buffer);
-        for (int i = 0; i < Support * Support; i++)
+        ref float spline = ref MemoryMarshal.GetArrayDataReference(grid.Spline);
+        ref float row = ref Unsafe.Add(ref MemoryMarshal.GetArrayDataReference(nodes.Sums.Buffer), nodes.Start(tileX, tileY) + slot);
+        nint nextX = nodes.Stride, nextY = (nint)grid.NodesX * nodes.Stride, toValues = nodes.Slots;
+        for (int j = 0; j < Support; j++, row = ref Unsafe.Add(ref row, nextY))
         {
-            TLanes b = TLanes.All(grid.Spline[(Support * x) + (i % Support)] * grid.Spline[(Support * y) + (i / Support)]);
-            nint from = nodes.Start(tileX + (i % Support), tileY + (i / Support)) + slot;
-            total = TLanes.MultiplyAdd(TLanes.Load(ref node, from), b, total);
-            if (TForm.Values)
-                exchange = TLanes.MultiplyAdd(TLanes.Load(ref node, from + nodes.Slots), b, exchange);
+            TLanes w = TLanes.All(0), e = w, alongY = TLanes.All(Unsafe.Add(ref spline, (Support * y) + j));
+            for (int i = 0; i < Support; i++)
+            {
+                TLanes alongX = TLanes.All(Unsafe.Add(ref spline, (Support * x) + i));
+                w = TLanes.MultiplyAdd(TLanes.Load(ref row, i * nextX), alongX, w);
+                if (TForm.Values)
+                    e = TLanes.MultiplyAdd(TLanes.Load(ref row, (i * nextX) + toValues), alongX, e);
+            }
+
+            total = TLanes.MultiplyAdd(w, alongY, total);
+            exchange = TLanes.MultiplyAdd(e, alongY, exchange);
         }
 
         TLanes weight = weights.Of<TLanes>(sample);

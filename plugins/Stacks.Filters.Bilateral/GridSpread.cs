@@ -17,6 +17,7 @@ internal sealed class GridSpread<T, TForm, TLanes>(LevelFrame<T> frame, Plane<fl
 {
     private const int Lanes = LevelWeights.Lanes;
     private const int Support = SpatialGrid.Support;
+    private const int LonerBits = 16;
 
     private readonly SpatialGrid grid = frame.Grid;
     private readonly LevelWeights weights = frame.Weights;
@@ -62,7 +63,7 @@ internal sealed class GridSpread<T, TForm, TLanes>(LevelFrame<T> frame, Plane<fl
                 int above = (sample >> LevelWeights.FractionBits) - crowd;
                 if ((uint)above >= room)
                 {
-                    loners[alone] = (y * grid.Pitch) + x;
+                    loners[alone] = (y << LonerBits) + x;
                     alone += sample >= 0 ? 1 : 0;
                     continue;
                 }
@@ -122,10 +123,11 @@ internal sealed class GridSpread<T, TForm, TLanes>(LevelFrame<T> frame, Plane<fl
         }
 
         for (int i = 0; i < alone; i++)
-            SpreadLoner(tileX, tileY, loners[i] % grid.Pitch, loners[i] / grid.Pitch);
+            SpreadLoner(tileX, tileY, loners[i] & ((1 << LonerBits) - 1), loners[i] >> LonerBits);
     }
 
     /// <summary>A sample apart from its tile's crowd goes to its nodes by itself.</summary>
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     private void SpreadLoner(int tileX, int tileY, int x, int y)
     {
         int at = (((tileY * grid.Pitch) + y) * grid.Width) + (tileX * grid.Pitch) + x;
@@ -138,16 +140,18 @@ internal sealed class GridSpread<T, TForm, TLanes>(LevelFrame<T> frame, Plane<fl
             weight *= TLanes.All(factors.Buffer[at]);
         if (TForm.Values)
             exchange = weight * (TLanes.All(LevelSlots.From(slots.Value(slot), values.Buffer[at])) - slots.Sixteen<TLanes>(slot, slots.Value(slot)));
-        ref float node = ref MemoryMarshal.GetArrayDataReference(nodes.Sums.Buffer);
-        for (int i = 0; i < Support * Support; i++)
+        ref float spline = ref MemoryMarshal.GetArrayDataReference(grid.Spline);
+        ref float row = ref Unsafe.Add(ref MemoryMarshal.GetArrayDataReference(nodes.Sums.Buffer), nodes.Start(tileX, tileY) + slot);
+        nint nextX = nodes.Stride, nextY = (nint)grid.NodesX * nodes.Stride, toValues = nodes.Slots;
+        for (int j = 0; j < Support; j++, row = ref Unsafe.Add(ref row, nextY))
         {
-            TLanes b = TLanes.All(grid.Spline[(Support * x) + (i % Support)] * grid.Spline[(Support * y) + (i / Support)]);
-            nint to = nodes.Start(tileX + (i % Support), tileY + (i / Support)) + slot;
-            TLanes.MultiplyAdd(weight, b, TLanes.Load(ref node, to)).Store(ref node, to);
-            if (TForm.Values)
+            TLanes alongY = TLanes.All(Unsafe.Add(ref spline, (Support * y) + j)), w = weight * alongY, e = exchange * alongY;
+            for (int i = 0; i < Support; i++)
             {
-                to += nodes.Slots;
-                TLanes.MultiplyAdd(exchange, b, TLanes.Load(ref node, to)).Store(ref node, to);
+                TLanes alongX = TLanes.All(Unsafe.Add(ref spline, (Support * x) + i));
+                TLanes.MultiplyAdd(w, alongX, TLanes.Load(ref row, i * nextX)).Store(ref row, i * nextX);
+                if (TForm.Values)
+                    TLanes.MultiplyAdd(e, alongX, TLanes.Load(ref row, (i * nextX) + toValues)).Store(ref row, (i * nextX) + toValues);
             }
         }
     }

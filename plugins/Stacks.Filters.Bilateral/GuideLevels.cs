@@ -1,4 +1,5 @@
 using System.Numerics;
+using System.Runtime.CompilerServices;
 using Stacks.Abstractions;
 
 namespace Stacks.Filters.Bilateral;
@@ -72,8 +73,10 @@ internal sealed class GuideLevels
             for (int y = first; y < end; y++)
             {
                 context.Cancellation.ThrowIfCancellationRequested();
-                for (int x = 0; x < input.Width; x++)
-                    rows[x, 0] = double.CreateTruncating(input[x, y]);
+                ReadOnlySpan<T> samples = input.Row(y);
+                Span<double> v = rows.Row(0);
+                for (int x = 0; x < v.Length; x++)
+                    v[x] = double.CreateTruncating(samples[x]);
                 noise.StabiliseByRow(y, rows.Row(0), rows.Row(1));
                 good &= FillRow(rows, flags.Row(y), Samples.Row(y), counts.Samples, values.Samples, origin, perSigma);
             }
@@ -86,12 +89,15 @@ internal sealed class GuideLevels
     /// <summary>True for samples that are neither missing nor saturated.</summary>
     public static bool TakesPart(SampleFlags flags) => (flags & (SampleFlags.Missing | SampleFlags.Saturated)) == 0;
 
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     private static bool FillRow(
         Plane<double> rows, ReadOnlySpan<SampleFlags> flags, Span<int> samples, Span<int> counts, Span<double> values, double origin, double perSigma)
     {
         const double one = 1 << LevelWeights.FractionBits;
         const double least = Margin * one, most = (Axis - Margin) * one;
-        ReadOnlySpan<double> v = rows.Row(0), t = rows.Row(1);
+        ReadOnlySpan<double> v = rows.Row(0)[..samples.Length], t = rows.Row(1)[..samples.Length];
+        flags = flags[..samples.Length];
+        double scale = perSigma * one;
         bool fits = true;
         for (int x = 0; x < samples.Length; x++)
         {
@@ -101,7 +107,7 @@ internal sealed class GuideLevels
                 continue;
             }
 
-            double place = ((t[x] - origin) * (perSigma * one)) + (Axis / 2 * one) + 0.5;
+            double place = ((t[x] - origin) * scale) + (Axis / 2 * one) + 0.5;
             if (!(place > least && place < most))
             {
                 fits = false;

@@ -76,6 +76,20 @@ public class FastBilateralTests(ITestOutputHelper log)
         Assert.True(worst < 5e-4, $"worst {worst:E2} range sigmas");
     }
 
+    /// <summary>A ramp over thousands of levels: the grid takes them batch by batch.</summary>
+    [Theory]
+    [InlineData(1500)]
+    [InlineData(6000)]
+    public void Levels_beyond_one_batch_stay_within_tolerance(double span)
+    {
+        FastScene scene = new(160, 150, 8, 0);
+        for (int i = 0; i < scene.Plane.Length; i++)
+            scene.Plane.Samples[i] += FastScene.Noise * span * i / scene.Plane.Length;
+        double worst = scene.Worst(Fast(scene, 5, 1, Constant), scene.Places(30, 1), 5, 1, Constant);
+        log.WriteLine($"worst {worst:E2} range sigmas");
+        Assert.True(worst < 5e-4, $"worst {worst:E2} range sigmas");
+    }
+
     [Theory]
     [InlineData(1, 1)]
     [InlineData(1, 40)]
