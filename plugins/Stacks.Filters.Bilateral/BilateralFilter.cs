@@ -93,8 +93,8 @@ public sealed class BilateralFilter : IFilterPlugin
             Default = ParameterValue.Of(Auto),
             Words = [Auto, Exact, Fast],
             Meaning = "How the sums are taken: exact, pixel by pixel; fast, in a time independent of spatial_sigma, which must "
-                + "be 5 px or more; auto, fast from there on, except for frames on so many range levels that exact is sooner "
-                + "done. A frame whose T spans more than 45,000 range sigmas is filtered exactly in any case",
+                + "be 5 px or more; auto, fast from there on where its grid fits in 1 GB, except for frames on so many range "
+                + "levels that exact is sooner done. A frame whose T spans more than 45,000 range sigmas is filtered exactly in any case",
             WhenRaised = "fast: within tolerance of the sum over all pixels",
             WhenLowered = "exact: within 1e-4 range sigmas of it",
         },
@@ -133,16 +133,19 @@ public sealed class BilateralFilter : IFilterPlugin
         double? rangeSigma = values[RangeSigma].Form == ParameterForm.Word ? null : values.Number(RangeSigma);
         bool conserveFlux = values.Switch(ConserveFlux);
         string method = values.Word(Method);
-        if (method == Fast && spatialSigma < LeastFastSigma)
+        double tolerance = values.Number(Tolerance);
+        SpatialGrid? grid = method == Exact || spatialSigma < LeastFastSigma ? null : SpatialGrid.Of(spatialSigma, tolerance, layout.Width, layout.Height);
+        bool fast = grid is { IsHeld: true };
+        if (method == Fast && !fast)
         {
             throw new ParameterException(
                 Method,
-                string.Create(CultureInfo.InvariantCulture, $"fast is for a {SpatialSigma} of {LeastFastSigma} samples and more, here it is {spatialSigma:G4}"),
+                grid is null
+                    ? string.Create(CultureInfo.InvariantCulture, $"fast is for a {SpatialSigma} of {LeastFastSigma} samples and more, here it is {spatialSigma:G4}")
+                    : string.Create(CultureInfo.InvariantCulture, $"fast would need more than 1 GB for a frame of {layout.Width} x {layout.Height} at a {SpatialSigma} of {spatialSigma:G4} samples"),
                 $"give {Auto} or {Exact}");
         }
 
-        bool fast = method != Exact && spatialSigma >= LeastFastSigma;
-        double tolerance = values.Number(Tolerance);
         ResolvedParameter[] resolved =
         [
             new(SpatialSigma, spatialSigma.ToString("R", CultureInfo.InvariantCulture), "px"),
@@ -159,7 +162,7 @@ public sealed class BilateralFilter : IFilterPlugin
             BilateralStep<T> exact = new(new SpatialKernel(spatialSigma, layout.Width, layout.Height), rangeSigma, conserveFlux, resolved);
             return fast
                 ? new FastBilateralStep<T>(
-                    SpatialGrid.Of(spatialSigma, tolerance, layout.Width, layout.Height), LevelWeights.Of(tolerance), rangeSigma, conserveFlux, method == Auto, exact, resolved)
+                    grid!, LevelWeights.Of(tolerance), rangeSigma, conserveFlux, method == Auto, exact, resolved)
                 : exact;
         }
     }

@@ -12,6 +12,8 @@ internal sealed class SpatialGrid
     /// <summary>Nodes a sample is spread to along an axis.</summary>
     public const int Support = 4;
 
+    private const int FewestSlots = 3 * LevelWeights.Lanes;
+
     private const int SpectrumSamples = 1024;
 
     /// <summary>A grid for frames of one shape.</summary>
@@ -78,8 +80,11 @@ internal sealed class SpatialGrid
     /// <summary>exp(-d^2 / 2 ss^2) for distances d of whole samples, to 6 ss.</summary>
     public double[] Near { get; }
 
+    /// <summary>Whether the nodes of so large a frame fit in 1 GB with the fewest slots.</summary>
+    public bool IsHeld => (long)NodesX * NodesY * FewestSlots * 2 * sizeof(float) <= 1L << 30;
+
     /// <summary>Slots of range levels in memory at once, a multiple of sixteen: what 256 MB hold.</summary>
-    public int MostSlots => (int)Math.Clamp((1L << 28) / (2L * sizeof(float) * NodesX * NodesY), 3 * LevelWeights.Lanes, 1024) / LevelWeights.Lanes * LevelWeights.Lanes;
+    public int MostSlots => (int)Math.Clamp((1L << 28) / (2L * sizeof(float) * NodesX * NodesY), FewestSlots, 1024) / LevelWeights.Lanes * LevelWeights.Lanes;
 
     /// <summary>
     /// Members up to which a level costs less pair by pair than on the grid: pairs grow with the square, the grid's work

@@ -36,6 +36,21 @@ public class FastBilateralChoiceTests
         Assert.Contains("5", error.Message, StringComparison.Ordinal);
     }
 
+    /// <summary>At a spatial sigma of 5 the grid has a quarter of the frame's samples as nodes, each of 48 slots and two floats.</summary>
+    [Theory]
+    [InlineData(3000, true)]
+    [InlineData(8000, false)]
+    public void Frames_whose_grid_would_not_fit_are_left_to_the_exact_form(int side, bool fits)
+    {
+        FrameLayout layout = new() { Width = side, Height = side, SampleType = SampleType.Float32 };
+        BilateralFilter filter = new();
+        IFilterStep Step(string method) => filter.Prepare(
+            layout, WorkType.Float32, new ParameterValues(filter.Parameters, new Dictionary<string, ParameterValue> { ["spatial_sigma"] = ParameterValue.Of(5), ["method"] = ParameterValue.Of(method) }));
+        Assert.Equal(fits, Step("auto") is FastBilateralStep<float>);
+        if (!fits)
+            Assert.Contains("1 GB", Assert.Throws<ParameterException>(() => Step("fast")).Message, StringComparison.Ordinal);
+    }
+
     /// <summary>T of 1e9 range sigmas has more levels than the fast form holds.</summary>
     [Fact]
     public void A_frame_of_too_many_levels_is_filtered_exactly_and_the_record_says_so()
