@@ -72,6 +72,7 @@ public sealed class WindowMoments<T>(Plane<T> plane, Plane<SampleFlags> flags, S
         }
     }
 
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     private void Rows<TLanes>(int first, int end, MomentsOfRow receive)
         where TLanes : struct, IDoubleLanes<TLanes>
     {
