@@ -18,8 +18,8 @@ public sealed class BilateralFilter : IFilterPlugin
     private const string Tolerance = "tolerance";
     private const string MeanGradientWord = "mean-gradient";
 
-    /// <summary>Least ss of the fast form, samples: below, its grid would have nearly as many nodes as the frame has samples.</summary>
-    private const double LeastFastSigma = 5;
+    /// <summary>Least ss of the fast form, samples: below, the exact form is sooner done.</summary>
+    private const double LeastFastSigma = 6;
 
     private const string Auto = "auto";
     private const string Exact = "exact";
@@ -93,7 +93,7 @@ public sealed class BilateralFilter : IFilterPlugin
             Default = ParameterValue.Of(Auto),
             Words = [Auto, Exact, Fast],
             Meaning = "How the sums are taken: exact, pixel by pixel; fast, in a time independent of spatial_sigma, which must "
-                + "be 5 px or more; auto, fast from there on where its grid fits in 1 GB, except for frames on so many range "
+                + "be 6 px or more; auto, fast from there on where its grid fits in 1 GB, except for frames on so many range "
                 + "levels that exact is sooner done. A frame whose T spans more than 45,000 range sigmas is filtered exactly in any case",
             WhenRaised = "fast: within tolerance of the sum over all pixels",
             WhenLowered = "exact: within 1e-4 range sigmas of it",

@@ -25,8 +25,8 @@ internal sealed class FastBilateralStep<T>(
 {
     private const int Rounds = 3;
 
-    /// <summary>Measured times of a pass, ns: the exact form for each q, the fast one for each sample and for each level of each node.</summary>
-    private const double ExactNeighbour = 0.3, FastSample = 25, FastLevel = 12;
+    /// <summary>Measured times of a pass, ns: the exact form's for each q; the fast one's for each sample, tile, and slot of a node.</summary>
+    private const double ExactNeighbour = 0.14, FastSample = 20, FastTile = 600, FastSlot = 10;
 
     /// <summary>Bits of vectors to compute with, 0 for none; results are the same bits.</summary>
     public int VectorBits { get; init; } = RealLanes.Widest;
@@ -72,9 +72,9 @@ internal sealed class FastBilateralStep<T>(
 
     private bool ExactIsCheaper(int levels)
     {
-        double samples = (double)grid.Width * grid.Height, nodes = (double)grid.NodesX * grid.NodesY;
-        double alongX = Math.Min((8 * grid.Sigma) + 1, grid.Width), alongY = Math.Min((8 * grid.Sigma) + 1, grid.Height);
-        return samples * alongX * alongY * ExactNeighbour < (samples * FastSample) + (nodes * levels * FastLevel);
+        double samples = (double)grid.Width * grid.Height, tiles = (double)grid.TilesX * grid.TilesY, nodes = (double)grid.NodesX * grid.NodesY;
+        double neighbours = Math.Min(Math.PI * Math.Pow(SpatialKernel.Cut * grid.Sigma, 2), samples), slots = levels + weights.Count + LevelWeights.Lanes;
+        return samples * neighbours * ExactNeighbour < (samples * FastSample) + (tiles * FastTile) + (nodes * slots * FastSlot);
     }
 
     /// <summary>Filters the frame; returns c of the exchange form.</summary>

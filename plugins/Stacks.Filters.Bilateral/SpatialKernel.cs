@@ -9,7 +9,8 @@ namespace Stacks.Filters.Bilateral;
 /// </summary>
 internal sealed class SpatialKernel
 {
-    private const double Cut = 4.5;
+    /// <summary>Radius of the disc in ss.</summary>
+    public const double Cut = 4.5;
 
     private readonly int[] halfWidths;
     private readonly double sigma;

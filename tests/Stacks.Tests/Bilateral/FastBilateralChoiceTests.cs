@@ -17,8 +17,8 @@ public class FastBilateralChoiceTests
 
     [Theory]
     [InlineData("auto", 1.5, "exact")]
-    [InlineData("auto", 4.9, "exact")]
-    [InlineData("auto", 5, "fast")]
+    [InlineData("auto", 5.9, "exact")]
+    [InlineData("auto", 6, "fast")]
     [InlineData("exact", 58, "exact")]
     [InlineData("fast", 58, "fast")]
     public void The_record_says_which_form_was_prepared(string method, double spatial, string used)
@@ -29,14 +29,14 @@ public class FastBilateralChoiceTests
     }
 
     [Fact]
-    public void Fast_is_refused_where_its_grid_would_be_as_fine_as_the_frame()
+    public void Fast_is_refused_below_its_least_spatial_sigma()
     {
         ParameterException error = Assert.Throws<ParameterException>(() => Prepare("fast", 3));
         Assert.Contains("method", error.Message, StringComparison.Ordinal);
-        Assert.Contains("5", error.Message, StringComparison.Ordinal);
+        Assert.Contains("6", error.Message, StringComparison.Ordinal);
     }
 
-    /// <summary>At a spatial sigma of 5 the grid has a quarter of the frame's samples as nodes, each of 48 slots and two floats.</summary>
+    /// <summary>At a spatial sigma of 6 the grid has a quarter of the frame's samples as nodes, each of 48 slots and two floats.</summary>
     [Theory]
     [InlineData(3000, true)]
     [InlineData(8000, false)]
@@ -45,7 +45,7 @@ public class FastBilateralChoiceTests
         FrameLayout layout = new() { Width = side, Height = side, SampleType = SampleType.Float32 };
         BilateralFilter filter = new();
         IFilterStep Step(string method) => filter.Prepare(
-            layout, WorkType.Float32, new ParameterValues(filter.Parameters, new Dictionary<string, ParameterValue> { ["spatial_sigma"] = ParameterValue.Of(5), ["method"] = ParameterValue.Of(method) }));
+            layout, WorkType.Float32, new ParameterValues(filter.Parameters, new Dictionary<string, ParameterValue> { ["spatial_sigma"] = ParameterValue.Of(6), ["method"] = ParameterValue.Of(method) }));
         Assert.Equal(fits, Step("auto") is FastBilateralStep<float>);
         if (!fits)
             Assert.Contains("1 GB", Assert.Throws<ParameterException>(() => Step("fast")).Message, StringComparison.Ordinal);
@@ -84,7 +84,7 @@ public class FastBilateralChoiceTests
         Dictionary<string, double> reported = [];
         FilterRun.Smooth(
             FilterRun.Prepare(
-                new BilateralFilter(), plane, ("spatial_sigma", ParameterValue.Of(5)), ("range_sigma", ParameterValue.Of(1)), ("conserve_flux", ParameterValue.Of(false)), ("method", ParameterValue.Of(method))),
+                new BilateralFilter(), plane, ("spatial_sigma", ParameterValue.Of(8)), ("range_sigma", ParameterValue.Of(1)), ("conserve_flux", ParameterValue.Of(false)), ("method", ParameterValue.Of(method))),
             plane,
             noise: LinearNoise.Constant(1),
             report: (name, value) => reported[name] = value);
