@@ -34,7 +34,7 @@ internal sealed class QuartileKernels
 
     /// <summary>Bytes that <see cref="QuartileWindows{T}"/> rents.</summary>
     public long ScratchBytes<T>()
-        where T : unmanaged => Quantiles.Take(Shared).Sum(q => q.ScratchBytes<T>());
+        where T : unmanaged, INumber<T> => Quantiles.Take(Shared).Sum(q => q.ScratchBytes<T>());
 }
 
 /// <summary>Quartiles of one window.</summary>

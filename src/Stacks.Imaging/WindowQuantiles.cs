@@ -9,13 +9,17 @@ namespace Stacks.Imaging;
 /// </summary>
 public sealed class WindowQuantiles
 {
+    /// <summary>Side of the largest window that networks are faster for.</summary>
+    private const int LargestNetwork = 9;
+
     private readonly double[] probabilities;
 
     /// <summary>Quantiles of the windows of one side.</summary>
-    /// <param name="side">Side k, odd, 3 or more.</param>
+    /// <param name="side">Side k, odd, 3 to 223.</param>
     /// <param name="probabilities">Probabilities in [0, 1], in the order of the results.</param>
     public WindowQuantiles(int side, params ReadOnlySpan<double> probabilities)
     {
+        ArgumentOutOfRangeException.ThrowIfGreaterThan(side, OrdinalBlocks.MostSide);
         Side = side;
         this.probabilities = probabilities.ToArray();
         Full = new WindowRankTable(side * side, this.probabilities, 0);
@@ -36,7 +40,7 @@ public sealed class WindowQuantiles
 
     /// <summary>Bytes that <c>Over</c> rents.</summary>
     public long ScratchBytes<T>()
-        where T : unmanaged => NetworkBlocks.ScratchBytes<T>(this);
+        where T : unmanaged, INumber<T> => Side <= LargestNetwork ? NetworkBlocks.ScratchBytes<T>(this) : OrdinalBlocks.ScratchBytes<T>(this);
 
     /// <summary>The quantiles around the pixels of rows [first, end).</summary>
     /// <param name="rows">The plane; its radius is at least that of the window.</param>
@@ -48,7 +52,9 @@ public sealed class WindowQuantiles
 
     /// <summary>The same with vectors of a width.</summary>
     internal QuantileBlocks<T> Over<T>(ReflectedRows<T> rows, int first, int end, IScratch scratch, LaneWidth width, NetworkForm form)
-        where T : unmanaged, INumber<T> => new NetworkBlocks<T>(this, rows, first, end, scratch, width, form);
+        where T : unmanaged, INumber<T> => Side <= LargestNetwork
+            ? new NetworkBlocks<T>(this, rows, first, end, scratch, width, form)
+            : new OrdinalBlocks<T>(this, rows, first, end, scratch);
 
     /// <summary>The quantiles of one window by sorting its samples: the slow form.</summary>
     /// <param name="rows">The plane.</param>

@@ -21,7 +21,8 @@ internal sealed record WindowResults<T>(string Form, T[][] Values, int[] Counts)
     /// <summary>The results of every variant.</summary>
     public static IEnumerable<WindowResults<T>> AllForms(WindowQuantiles quantiles, ReflectedRows<T> rows)
     {
-        foreach ((LaneWidth width, NetworkForm form) in Variants)
+        // Windows beyond the networks have one kernel.
+        foreach ((LaneWidth width, NetworkForm form) in quantiles.Side > 9 ? Variants.Take(1) : Variants)
             yield return Of(quantiles, rows, width, form, rows.Height);
     }
 
