@@ -1,4 +1,6 @@
 using System.Numerics;
+using System.Runtime.CompilerServices;
+using System.Runtime.InteropServices;
 using System.Runtime.Intrinsics;
 using Stacks.Abstractions;
 
@@ -23,11 +25,11 @@ internal sealed class HoleCounts
         this.side = side;
         columns = scratch.Rent<byte>(ColumnCount(block, side), 1).Buffer;
         holes = scratch.Rent<byte>(2 * RowLength(block), 1).Buffer;
-        counts = scratch.Rent<ushort>(2 * block, 1).Buffer;
+        counts = scratch.Rent<ushort>(2 * RowLength(block), 1).Buffer;
     }
 
     /// <summary>Bytes rented.</summary>
-    public static long ScratchBytes(int block, int side) => ColumnCount(block, side) + (2 * RowLength(block)) + (4L * block);
+    public static long ScratchBytes(int block, int side) => ColumnCount(block, side) + (6L * RowLength(block));
 
     /// <summary>Begins above row <paramref name="y"/>, at block column <paramref name="x"/>.</summary>
     public void Start<T>(ReflectedRows<T> rows, int x, int y)
@@ -41,7 +43,7 @@ internal sealed class HoleCounts
 
     /// <summary>Counts the windows around two rows, which follow those counted before.</summary>
     /// <returns>True when any window has a hole.</returns>
-    public bool Count<T>(ReflectedRows<T> rows, int x, int y, int width)
+    public bool Count<T>(ReflectedRows<T> rows, int x, int y)
         where T : unmanaged, INumber<T>
     {
         ArgumentOutOfRangeException.ThrowIfNotEqual(y, next);
@@ -54,18 +56,24 @@ internal sealed class HoleCounts
             Subtract(rows.Outsiders(next - (side / 2)), left);
         }
 
-        Span<ushort> all = counts.AsSpan(0, 2 * block);
+        Span<ushort> all = counts.AsSpan(0, 2 * RowLength(block));
         if (!any)
         {
             all.Fill((ushort)(side * side));
             return false;
         }
 
+        Vector512<ushort> full = Vector512.Create((ushort)(side * side));
         for (int row = 0; row < 2; row++)
         {
-            ReadOnlySpan<byte> found = Holes(row);
-            for (int i = 0; i < width; i++)
-                all[(row * block) + i] = (ushort)((side * side) - found[i]);
+            ref byte found = ref holes[row * RowLength(block)];
+            ref ushort taking = ref counts[row * RowLength(block)];
+            for (nuint i = 0; i < (nuint)RowLength(block); i += (nuint)Vector512<byte>.Count)
+            {
+                (Vector512<ushort> low, Vector512<ushort> high) = Vector512.Widen(Vector512.LoadUnsafe(ref found, i));
+                (full - low).StoreUnsafe(ref taking, i);
+                (full - high).StoreUnsafe(ref taking, i + (nuint)Vector512<ushort>.Count);
+            }
         }
 
         return true;
@@ -75,45 +83,48 @@ internal sealed class HoleCounts
     public ReadOnlySpan<byte> Holes(int row) => holes.AsSpan(row * RowLength(block), block);
 
     /// <summary>Samples that take part in the windows of a row.</summary>
-    public ReadOnlySpan<ushort> Counts(int row) => counts.AsSpan(row * block, block);
+    public ReadOnlySpan<ushort> Counts(int row) => counts.AsSpan(row * RowLength(block), block);
 
     /// <summary>True when windows in columns [x, x + count) of either row have holes.</summary>
     public bool AnyIn(int x, int count) =>
         Holes(0).Slice(x, count).ContainsAnyExcept((byte)0) || Holes(1).Slice(x, count).ContainsAnyExcept((byte)0);
 
-    private static int RowLength(int block) => Math.Max(block, Vector512<byte>.Count);
+    private static int RowLength(int block) => (block + Vector512<byte>.Count - 1) / Vector512<byte>.Count * Vector512<byte>.Count;
 
     private static int ColumnCount(int block, int side) => RowLength(block) + side - 1;
 
     private void Add(ReadOnlySpan<byte> outsiders, int left)
     {
         ReadOnlySpan<byte> row = outsiders[left..Math.Min(left + ColumnCount(block, side), outsiders.Length)];
+        ref byte from = ref MemoryMarshal.GetReference(row), to = ref columns[0];
         int i = 0;
         for (; i <= row.Length - Vector512<byte>.Count; i += Vector512<byte>.Count)
-            (Vector512.Create<byte>(columns.AsSpan(i)) + Vector512.Create(row[i..])).CopyTo(columns.AsSpan(i));
+            (Vector512.LoadUnsafe(ref to, (nuint)i) + Vector512.LoadUnsafe(ref from, (nuint)i)).StoreUnsafe(ref to, (nuint)i);
         for (; i < row.Length; i++)
-            columns[i] += row[i];
+            Unsafe.Add(ref to, i) += row[i];
     }
 
     private void Subtract(ReadOnlySpan<byte> outsiders, int left)
     {
         ReadOnlySpan<byte> row = outsiders[left..Math.Min(left + ColumnCount(block, side), outsiders.Length)];
+        ref byte from = ref MemoryMarshal.GetReference(row), to = ref columns[0];
         int i = 0;
         for (; i <= row.Length - Vector512<byte>.Count; i += Vector512<byte>.Count)
-            (Vector512.Create<byte>(columns.AsSpan(i)) - Vector512.Create(row[i..])).CopyTo(columns.AsSpan(i));
+            (Vector512.LoadUnsafe(ref to, (nuint)i) - Vector512.LoadUnsafe(ref from, (nuint)i)).StoreUnsafe(ref to, (nuint)i);
         for (; i < row.Length; i++)
-            columns[i] -= row[i];
+            Unsafe.Add(ref to, i) -= row[i];
     }
 
     private bool Sum(Span<byte> into)
     {
+        ref byte from = ref columns[0], to = ref into[0];
         Vector512<byte> any = Vector512<byte>.Zero;
-        for (int x = 0; x <= into.Length - Vector512<byte>.Count; x += Vector512<byte>.Count)
+        for (nuint x = 0; x < (nuint)into.Length; x += (nuint)Vector512<byte>.Count)
         {
-            Vector512<byte> sum = Vector512<byte>.Zero;
-            for (int column = 0; column < side; column++)
-                sum += Vector512.Create<byte>(columns.AsSpan(x + column));
-            sum.CopyTo(into[x..]);
+            Vector512<byte> sum = Vector512.LoadUnsafe(ref from, x);
+            for (nuint column = 1; column < (nuint)side; column++)
+                sum += Vector512.LoadUnsafe(ref from, x + column);
+            sum.StoreUnsafe(ref to, x);
             any |= sum;
         }
 

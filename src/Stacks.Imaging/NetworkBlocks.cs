@@ -44,6 +44,7 @@ internal sealed unsafe class NetworkBlocks<T> : QuantileBlocks<T>
     private readonly T[] gathered, sorted;
     private readonly byte* imageRows, pairs, results, holedResults;
     private readonly nint[] valueRows;
+    private readonly (int Result, double Fraction)[] holedPlaces;
     private readonly bool interpolates;
     private readonly byte[] memory;
     private int nextPair, roundedBytes;
@@ -92,6 +93,9 @@ internal sealed unsafe class NetworkBlocks<T> : QuantileBlocks<T>
                 : results + (((i / quantiles.Probabilities.Length * quantiles.Full.Ranks.Length) + result) * Pitch));
         }
 
+        holedPlaces = new (int, double)[(quantiles.Holed.Holes + 1) * sorted.Length];
+        for (int i = 0; i < holedPlaces.Length; i++)
+            holedPlaces[i] = quantiles.Holed[i / sorted.Length, i % sorted.Length];
         X = -block;
         Y = end;
     }
@@ -174,8 +178,6 @@ internal sealed unsafe class NetworkBlocks<T> : QuantileBlocks<T>
 
     private Span<T> Result(int rank, int row) => new(results + (((row * quantiles.Full.Ranks.Length) + rank) * Pitch), block);
 
-    private Span<T> Holed(int rank, int row) => new(holedResults + (((row * quantiles.Holed.Ranks.Length) + rank) * Pitch), block);
-
     private Span<T> Value(int probability, int row) => new((byte*)valueRows[(row * quantiles.Probabilities.Length) + probability], block);
 
     private void Interpolate()
@@ -194,7 +196,7 @@ internal sealed unsafe class NetworkBlocks<T> : QuantileBlocks<T>
 
     private void FillHoles(byte** pointers)
     {
-        if (!holes!.Count(rows, X, Y, Width))
+        if (!holes!.Count(rows, X, Y))
             return;
         int lanes = VectorBytes / sizeof(T);
         byte** shifted = stackalloc byte*[radius + 3];
@@ -211,10 +213,12 @@ internal sealed unsafe class NetworkBlocks<T> : QuantileBlocks<T>
         for (int row = 0; row < Height; row++)
         {
             ReadOnlySpan<byte> found = holes.Holes(row)[..Width];
-            for (int i = found.IndexOfAnyExcept((byte)0); i >= 0 && i < Width; i++)
+            for (int i = 0; i < Width; i++)
             {
-                if (found[i] == 0)
-                    continue;
+                int next = found[i..].IndexOfAnyExcept((byte)0);
+                if (next < 0)
+                    break;
+                i += next;
                 if (found[i] > quantiles.Holed.Holes)
                 {
                     quantiles.BySorting<T>(rows, X + i, Y + row, gathered, sorted);
@@ -225,10 +229,11 @@ internal sealed unsafe class NetworkBlocks<T> : QuantileBlocks<T>
 
                 for (int p = 0; p < sorted.Length; p++)
                 {
-                    (int result, double fraction) = quantiles.Holed[found[i], p];
-                    Value(p, row)[i] = fraction == 0
-                        ? Holed(result, row)[i]
-                        : Quantile.Between(Holed(result, row)[i], Holed(result + 1, row)[i], fraction);
+                    (int result, double fraction) = holedPlaces[(found[i] * sorted.Length) + p];
+                    T* low = (T*)(holedResults + (((row * quantiles.Holed.Ranks.Length) + result) * Pitch)) + i;
+                    *((T*)valueRows[(row * sorted.Length) + p] + i) = fraction == 0
+                        ? *low
+                        : Quantile.Between(*low, *(T*)((byte*)low + Pitch), fraction);
                 }
             }
         }

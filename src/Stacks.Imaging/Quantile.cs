@@ -1,4 +1,5 @@
 using System.Numerics;
+using System.Runtime.CompilerServices;
 
 namespace Stacks.Imaging;
 
@@ -30,10 +31,19 @@ public static class Quantile
     }
 
     /// <summary>low + fraction (high - low), never beyond high; rounded half to even in integer types.</summary>
+    [MethodImpl(MethodImplOptions.AggressiveInlining)]
     public static T Between<T>(T low, T high, double fraction)
         where T : unmanaged, INumber<T>
     {
-        double a = double.CreateTruncating(low), b = double.CreateTruncating(high);
-        return Rounding.ToSample<T>(Math.Min(a + (fraction * (b - a)), b));
+        double a = double.CreateTruncating(low), b = double.CreateTruncating(high), between = a + (fraction * (b - a));
+        if (between > b)
+            between = b;
+
+        // Between two samples nothing has to be held at the ends of the type.
+        if (typeof(T) == typeof(ushort))
+            return Unsafe.BitCast<ushort, T>((ushort)(int)Math.Round(between));
+        if (typeof(T) == typeof(short))
+            return Unsafe.BitCast<short, T>((short)(int)Math.Round(between));
+        return T.CreateTruncating(between);
     }
 }

@@ -75,7 +75,8 @@ public sealed class ReflectedRows<T>
 
     /// <summary>True when samples can be read from <see cref="Buffer"/> as well as by <see cref="Copy"/>.</summary>
     internal bool IsPlain(int x, int y, int length) =>
-        outsiders is null && x >= 0 && x + length <= plane.Width && (uint)y < (uint)plane.Height;
+        x >= 0 && x + length <= plane.Width && (uint)y < (uint)plane.Height
+        && (outsiders is not { } mask || !mask.Row(y).Slice(x + Radius, length).Contains((byte)1));
 
     /// <summary>Copies samples of row <paramref name="y"/> from column <paramref name="x"/> on; those that take no part read as the highest of their type.</summary>
     public void Copy(int x, int y, Span<T> into)

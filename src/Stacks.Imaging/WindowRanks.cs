@@ -12,7 +12,7 @@ public sealed class WindowRanks
 {
     private const int VectorBytes = 64;
 
-    private readonly NetworkCode network;
+    private readonly Lazy<NetworkCode> network;
     private readonly int rankCount;
 
     /// <summary>Ranks of the windows of one side.</summary>
@@ -30,7 +30,8 @@ public sealed class WindowRanks
 
         Side = side;
         rankCount = ranks.Length;
-        network = WindowNetworks.Window(side, ranks);
+        int[] wanted = ranks.ToArray();
+        network = new Lazy<NetworkCode>(() => WindowNetworks.Window(side, wanted));
     }
 
     /// <summary>Side k of the window.</summary>
@@ -67,7 +68,7 @@ public sealed class WindowRanks
         fixed (T* result = results)
         {
             pointers[Side] = (byte*)result;
-            network.For<T>(VectorBytes, width, form, 1).Row(pointers, VectorBytes);
+            network.Value.For<T>(VectorBytes, width, form, 1).Row(pointers, VectorBytes);
         }
     }
 }

@@ -7,6 +7,7 @@ using Stacks.Benchmarks;
 (string Name, Func<Scene, IEnumerable<Ratio>> Rows)[] groups =
 [
     ("formats", FormatRatios.Of),
+    ("ranks", RankRatios.Of),
     ("pipeline", PipelineRatios.Of),
     ("local-statistics", LocalStatisticsRatios.Of),
     ("bilateral", BilateralRatios.Of),
