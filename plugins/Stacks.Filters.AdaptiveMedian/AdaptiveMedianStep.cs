@@ -18,7 +18,8 @@ internal sealed class AdaptiveMedianStep<T>(FrameLayout layout, ImpulseRules rul
 
     /// <inheritdoc/>
     public long ScratchBytes =>
-        ReflectedRows.ScratchBytes(layout.Width, layout.Height, rules.LargestWindow / 2) + layout.Length + kernels.ScratchBytes<T>();
+        ReflectedRows.ScratchBytes(layout.Width, layout.Height, rules.LargestWindow / 2) + layout.Length
+        + kernels.ScratchBytes<T>() + ClearPixels<T>.ScratchBytes;
 
     /// <inheritdoc/>
     public IReadOnlyList<ResolvedParameter> Resolved => rules.Resolved;

@@ -11,20 +11,24 @@ namespace Stacks.Filters.AdaptiveMedian;
 /// precision: those whose first trusted window is 3 or 5 and clears them. Every comparison keeps a margin of 1e-4, far
 /// beyond its rounding, so that what is in doubt is left to the exact rules. Values of 64 bits are all in doubt.
 /// </summary>
-internal sealed class ClearPixels<T>(ImpulseRules rules, NoiseModel noise)
+internal sealed class ClearPixels<T>(ImpulseRules rules, NoiseModel noise, IScratch scratch)
     where T : unmanaged, INumber<T>
 {
     /// <summary>Pixels of an answer.</summary>
     public const int Answer = 64;
 
-    private const int MostPixels = 512 + Answer;
+    private const int MostPixels = 512 + Answer, MostAnswers = MostPixels / Answer;
     private const float Margin = 1e-4f, RangeMargin = 1e-6f;
 
-    private readonly float[] values = new float[MostPixels], medians = new float[MostPixels], lower = new float[MostPixels];
-    private readonly float[] upper = new float[MostPixels], variances = new float[MostPixels];
-    private readonly ulong[] trusted = new ulong[MostPixels / Answer], untrusted = new ulong[MostPixels / Answer];
-    private readonly ulong[] clean = new ulong[MostPixels / Answer];
-    private readonly ulong[] open = new ulong[MostPixels / Answer], clear = new ulong[MostPixels / Answer];
+    private readonly float[] values = Rent<float>(scratch, MostPixels), medians = Rent<float>(scratch, MostPixels);
+    private readonly float[] lower = Rent<float>(scratch, MostPixels), upper = Rent<float>(scratch, MostPixels);
+    private readonly float[] variances = Rent<float>(scratch, MostPixels);
+    private readonly ulong[] trusted = Rent<ulong>(scratch, MostAnswers), untrusted = Rent<ulong>(scratch, MostAnswers);
+    private readonly ulong[] clean = Rent<ulong>(scratch, MostAnswers), open = Rent<ulong>(scratch, MostAnswers);
+    private readonly ulong[] clear = Rent<ulong>(scratch, MostAnswers);
+
+    /// <summary>Bytes rented.</summary>
+    public static long ScratchBytes => (5L * MostPixels * sizeof(float)) + (5L * MostAnswers * sizeof(ulong));
 
     /// <summary>Finds them in a row of a block.</summary>
     /// <param name="windows">The block.</param>
@@ -99,4 +103,7 @@ internal sealed class ClearPixels<T>(ImpulseRules rules, NoiseModel noise)
 
     private static Vector512<float> Load(float[] numbers, int i) =>
         Vector512.LoadUnsafe(ref MemoryMarshal.GetArrayDataReference(numbers), (nuint)i);
+
+    private static TNumber[] Rent<TNumber>(IScratch scratch, int count)
+        where TNumber : unmanaged => scratch.Rent<TNumber>(count, 1).Buffer;
 }

@@ -28,7 +28,7 @@ internal sealed class ImpulseSearch<T>(ImpulseRules rules, QuartileKernels kerne
     public void Judge(Plane<SampleFlags> given, Plane<SampleFlags> judged, int first, int end, FrameContext context)
     {
         QuartileWindows<T> windows = new(kernels, rows, first, end, context.Scratch);
-        ClearPixels<T> clearPixels = new(rules, noise);
+        ClearPixels<T> clearPixels = new(rules, noise, context.Scratch);
         while (windows.Advance())
         {
             context.Cancellation.ThrowIfCancellationRequested();

@@ -1,4 +1,5 @@
 using System.Numerics;
+using System.Runtime.CompilerServices;
 using Stacks.Abstractions;
 using Stacks.Imaging;
 
@@ -34,7 +35,10 @@ internal sealed class QuartileKernels
 
     /// <summary>Bytes that <see cref="QuartileWindows{T}"/> rents.</summary>
     public long ScratchBytes<T>()
-        where T : unmanaged, INumber<T> => Quantiles.Take(Shared).Sum(q => q.ScratchBytes<T>());
+        where T : unmanaged, INumber<T> =>
+        Quantiles.Take(Shared).Sum(q => q.ScratchBytes<T>())
+        + (Ranks.Count * 3L * WindowRanks.Pixels<T>() * Unsafe.SizeOf<T>())
+        + ((long)Quantiles[^1].Side * Quantiles[^1].Side * Unsafe.SizeOf<T>());
 }
 
 /// <summary>Quartiles of one window.</summary>
@@ -68,9 +72,9 @@ internal sealed class QuartileWindows<T>
         this.kernels = kernels;
         this.rows = rows;
         shared = [.. kernels.Quantiles.Take(kernels.Shared).Select(q => q.Over(rows, first, end, scratch))];
-        alone = [.. kernels.Ranks.Select(_ => new T[3 * WindowRanks.Pixels<T>()])];
+        alone = [.. kernels.Ranks.Select(_ => scratch.Rent<T>(3 * WindowRanks.Pixels<T>(), 1).Buffer)];
         aloneAt = [.. kernels.Ranks.Select(_ => (-1, -1))];
-        gathered = new T[kernels.Quantiles[^1].Side * kernels.Quantiles[^1].Side];
+        gathered = scratch.Rent<T>(kernels.Quantiles[^1].Side, kernels.Quantiles[^1].Side).Buffer;
     }
 
     /// <summary>How many windows there are.</summary>
