@@ -114,4 +114,4 @@ public sealed class ParameterValues
 /// <param name="Name">Name of the parameter.</param>
 /// <param name="Value">The resolved value, invariant culture, round-trip precision.</param>
 /// <param name="Unit">Unit, or empty.</param>
-public readonly record struct ResolvedParameter(string Name, string Value, string Unit);
+public sealed record ResolvedParameter(string Name, string Value, string Unit);

@@ -36,16 +36,17 @@ internal sealed class MinMaxNetwork
     public IReadOnlyList<int> Schedule()
     {
         List<int> order = [];
-        HashSet<int> done = [];
+        bool[] done = new bool[nodes.Count];
         foreach (NetworkOutput output in outputs)
             Visit(output.Value, order, done);
         return order;
     }
 
-    private void Visit(int value, List<int> order, HashSet<int> done)
+    private void Visit(int value, List<int> order, bool[] done)
     {
-        if (!done.Add(value))
+        if (done[value])
             return;
+        done[value] = true;
         NetworkNode node = nodes[value];
         if (node.Operation != NetworkOperation.Input)
         {
@@ -86,7 +87,7 @@ internal enum NetworkOperation
 }
 
 /// <summary>A value: of values A and B, or the sample at pointer A, row B, offset C.</summary>
-internal readonly record struct NetworkNode(NetworkOperation Operation, int A, int B, int C);
+internal sealed record NetworkNode(NetworkOperation Operation, int A, int B, int C);
 
 /// <summary>A value that comes out, and where.</summary>
-internal readonly record struct NetworkOutput(int Value, int Pointer, int Row);
+internal sealed record NetworkOutput(int Value, int Pointer, int Row);

@@ -9,28 +9,29 @@ namespace Stacks.Imaging;
 internal sealed class NetworkInterpreter
 {
     private readonly Step[] steps;
-    private readonly (int Pointer, int Row, int Place)[] outputs;
+    private readonly NetworkOutput[] outputs;
     private readonly int placeCount;
 
     /// <summary>Lays out a network.</summary>
     public NetworkInterpreter(MinMaxNetwork network)
     {
         IReadOnlyList<int> order = network.Schedule();
-        Dictionary<int, int> uses = [];
+        int[] uses = new int[network.Nodes.Count];
         foreach (int value in order)
         {
             foreach (int operand in Operands(network.Nodes[value]))
-                uses[operand] = uses.GetValueOrDefault(operand) + 1;
+                uses[operand]++;
         }
 
         foreach (NetworkOutput output in network.Outputs)
-            uses[output.Value] = uses.GetValueOrDefault(output.Value) + 1;
+            uses[output.Value]++;
 
         Stack<int> free = new();
-        Dictionary<int, int> placeOf = [];
-        List<Step> list = [];
-        foreach (int value in order)
+        int[] placeOf = new int[network.Nodes.Count];
+        steps = new Step[order.Count];
+        for (int i = 0; i < steps.Length; i++)
         {
+            int value = order[i];
             NetworkNode node = network.Nodes[value];
             Step step = node.Operation == NetworkOperation.Input
                 ? new Step(node.Operation, 0, node.A, node.B, node.C)
@@ -42,11 +43,10 @@ internal sealed class NetworkInterpreter
             }
 
             placeOf[value] = free.Count > 0 ? free.Pop() : placeCount++;
-            list.Add(step with { Place = placeOf[value] });
+            steps[i] = step with { Place = placeOf[value] };
         }
 
-        steps = [.. list];
-        outputs = [.. network.Outputs.Select(o => (o.Pointer, o.Row, placeOf[o.Value]))];
+        outputs = [.. network.Outputs.Select(o => o with { Value = placeOf[o.Value] })];
     }
 
     /// <summary>Computes a row of outputs.</summary>
@@ -74,7 +74,7 @@ internal sealed class NetworkInterpreter
                 };
             }
 
-            foreach ((int pointer, int row, int place) in outputs)
+            foreach ((int place, int pointer, int row) in outputs)
                 Unsafe.WriteUnaligned(pointers[pointer] + ((nint)row * pitch) + x, places[place]);
         }
     }

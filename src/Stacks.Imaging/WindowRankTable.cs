@@ -19,19 +19,19 @@ internal sealed class WindowRankTable
     public WindowRankTable(int count, double[] probabilities, int mostHoles)
     {
         places = new (int, double)[Math.Min(mostHoles, count - 1) + 1, probabilities.Length];
-        SortedSet<int> wanted = [];
+        bool[] wanted = new bool[count + 1];
         for (int holes = 0; holes < places.GetLength(0); holes++)
         {
             foreach (double probability in probabilities)
             {
                 (int rank, double fraction) = Quantile.Position(count - holes, probability);
-                wanted.Add(rank);
+                wanted[rank] = true;
                 if (fraction > 0)
-                    wanted.Add(rank + 1);
+                    wanted[rank + 1] = true;
             }
         }
 
-        ranks = [.. wanted];
+        ranks = [.. Enumerable.Range(0, wanted.Length).Where(rank => wanted[rank])];
         for (int holes = 0; holes < places.GetLength(0); holes++)
         {
             for (int p = 0; p < probabilities.Length; p++)
