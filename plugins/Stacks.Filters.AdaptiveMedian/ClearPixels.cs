@@ -9,7 +9,8 @@ namespace Stacks.Filters.AdaptiveMedian;
 /// <summary>
 /// Finds the pixels that the rules of <see cref="ImpulseSearch{T}"/> certainly leave alone, many at once and in single
 /// precision: those whose first trusted window is 3 or 5 and clears them. Every comparison keeps a margin of 1e-4, far
-/// beyond its rounding, so that what is in doubt is left to the exact rules. Values of 64 bits are all in doubt.
+/// beyond its rounding, so that what is in doubt is left to the exact rules. In doubt are values of 64 bits, and those whose
+/// squares single precision does not hold with its full digits.
 /// </summary>
 internal sealed class ClearPixels<T>(ImpulseRules rules, NoiseModel noise, IScratch scratch)
     where T : unmanaged, INumber<T>
@@ -19,6 +20,7 @@ internal sealed class ClearPixels<T>(ImpulseRules rules, NoiseModel noise, IScra
 
     private const int MostPixels = 512 + Answer, MostAnswers = MostPixels / Answer;
     private const float Margin = 1e-4f, RangeMargin = 1e-6f;
+    private const float LeastSquare = 1e-36f, MostSquare = 1e37f;
 
     private readonly float[] values = Rent<float>(scratch, MostPixels), medians = Rent<float>(scratch, MostPixels);
     private readonly float[] lower = Rent<float>(scratch, MostPixels), upper = Rent<float>(scratch, MostPixels);
@@ -80,10 +82,11 @@ internal sealed class ClearPixels<T>(ImpulseRules rules, NoiseModel noise, IScra
                 Vector512<float> distance = Load(values, i) - Load(medians, i);
                 Vector512<float> wide = Vector512.MaxNative((iqr * wider) - step, Vector512<float>.Zero);
                 Vector512<float> narrow = Vector512.MaxNative((iqr * narrower) - step, Vector512<float>.Zero);
-                Vector512<float> limit = perRange * variance, isFinite = Vector512.LessThan(variance, Vector512.Create(float.MaxValue));
-                trust |= (Vector512.LessThanOrEqual(wide * wide * above, limit) & isFinite).ExtractMostSignificantBits() << part;
-                distrust |= (Vector512.GreaterThan(narrow * narrow * below, limit) & isFinite).ExtractMostSignificantBits() << part;
-                near |= (Vector512.LessThanOrEqual(distance * distance * above, perDistance * variance) & isFinite).ExtractMostSignificantBits() << part;
+                Vector512<float> limit = perRange * variance, reach = perDistance * variance;
+                Vector512<float> isHeld = IsHeld(variance) & IsHeld(limit) & IsHeld(reach);
+                trust |= (Vector512.LessThanOrEqual(wide * wide * above, limit) & isHeld).ExtractMostSignificantBits() << part;
+                distrust |= (Vector512.GreaterThan(narrow * narrow * below, limit) & isHeld).ExtractMostSignificantBits() << part;
+                near |= (Vector512.LessThanOrEqual(distance * distance * above, reach) & isHeld).ExtractMostSignificantBits() << part;
             }
 
             (trusted[answer], untrusted[answer], clean[answer]) = (trust, distrust, near);
@@ -100,6 +103,9 @@ internal sealed class ClearPixels<T>(ImpulseRules rules, NoiseModel noise, IScra
             untrusted[i / Answer] &= ~(1UL << (i % Answer));
         }
     }
+
+    private static Vector512<float> IsHeld(Vector512<float> square) =>
+        Vector512.GreaterThan(square, Vector512.Create(LeastSquare)) & Vector512.LessThan(square, Vector512.Create(MostSquare));
 
     private static Vector512<float> Load(float[] numbers, int i) =>
         Vector512.LoadUnsafe(ref MemoryMarshal.GetArrayDataReference(numbers), (nuint)i);

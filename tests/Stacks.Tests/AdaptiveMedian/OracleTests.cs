@@ -37,6 +37,32 @@ public class OracleTests
     [MemberData(nameof(Sizes))]
     public void Float_64_equals_the_oracle(int width, int height) => Compare<double>(width, height, 4);
 
+    /// <summary>Squares of such values fall below or go beyond what single precision holds.</summary>
+    [Theory]
+    [InlineData(1e-25)]
+    [InlineData(1e-23)]
+    [InlineData(1e-20)]
+    [InlineData(1.2e18)]
+    [InlineData(1.2e19)]
+    [InlineData(1e30)]
+    public void Float_32_of_any_scale_equals_the_oracle(double sigma)
+    {
+        const int Width = 150, Height = 40;
+        Random random = new(11);
+        SampleFlags[] flags = new SampleFlags[Width * Height];
+        float[] input = [.. flags.Select(_ => (float)(sigma * (Normal(random) + (random.Next(50) == 0 ? random.Next(-30, 30) : 0))))];
+        OracleRules rules = new(5, 2, 5, 2.4, "both", 0);
+        NoiseModel noise = LinearNoise.Constant(sigma);
+
+        (float[] expected, SampleFlags[] expectedFlags) = Oracle.Run(input, flags, Width, Height, noise, rules);
+        (float[] actual, SampleFlags[] actualFlags) = Cleaning.Run(input, flags, Width, Height, noise, rules, bands: 2);
+
+        Assert.Contains(SampleFlags.ReplacedBright, expectedFlags);
+        Assert.Contains(SampleFlags.ReplacedDark, expectedFlags);
+        Assert.Equal(expectedFlags, actualFlags);
+        Assert.Equal(expected, actual);
+    }
+
     private static void Compare<T>(int width, int height, int seed)
         where T : unmanaged, INumber<T>
     {
