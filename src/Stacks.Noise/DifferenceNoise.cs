@@ -1,5 +1,6 @@
 using System.Numerics;
-using System.Runtime.CompilerServices;
+using System.Runtime.InteropServices;
+using System.Runtime.Intrinsics;
 using Stacks.Abstractions;
 
 namespace Stacks.Noise;
@@ -25,12 +26,13 @@ public static class DifferenceNoise
     /// </summary>
     public const int MostResponses = 1 << 17;
 
+    private const int Beyond = 16; // rows are computed in whole vectors; what stands behind their ends is not looked at
     private const SampleFlags Unusable = SampleFlags.Missing | SampleFlags.Saturated;
 
     /// <summary>Bytes of scratch that measuring a frame rents, at most.</summary>
     public static long ScratchBytes(int width, int height) =>
         (2 * sizeof(double) * Math.Min((long)width * height, MostResponses + (2L * width)))
-        + (3 * sizeof(double) * (long)width)
+        + (7 * sizeof(double) * ((long)width + Beyond))
         + (sizeof(int) * (long)RankSelection.Counts);
 
     /// <summary>Measures a frame.</summary>
@@ -55,25 +57,32 @@ public static class DifferenceNoise
         int visited = (rows + stride - 1) / stride;
         Span<double> responses = scratch.Rent<double>(visited * columns, 1).Samples;
         Span<double> ratios = model is null ? [] : scratch.Rent<double>(visited * columns, 1).Samples;
-        Span<double> row = scratch.Rent<double>(width, 1).Samples;
-        Span<double> levels = scratch.Rent<double>(width, 1).Samples;
-        Span<double> variances = scratch.Rent<double>(width, 1).Samples;
+        Plane<double> rowsOfThree = scratch.Rent<double>(width + Beyond, 3);
+        Span<double> row = scratch.Rent<double>(width + Beyond, 1).Samples, rowRatios = scratch.Rent<double>(width + Beyond, 1).Samples;
+        Span<double> levels = scratch.Rent<double>(width + Beyond, 1).Samples, variances = scratch.Rent<double>(width + Beyond, 1).Samples;
         Span<int> counts = scratch.Rent<int>(RankSelection.Counts, 1).Samples;
 
         int count = 0;
         for (int y = stepY; y < values.Height - stepY; y += stride)
         {
-            Respond(values, flags, stepX, stepY, y, row, levels);
-            model?.VarianceByRow(0, y, levels, variances);
-            for (int x = stepX; x < width - stepX; x++)
+            for (int k = -1; k <= 1; k++)
+                ToDouble<T>(values.Row(y + (k * stepY)), rowsOfThree.Row(k + 1));
+            Respond(rowsOfThree, stepX, columns, quantisationStep, row, levels);
+            for (int k = -1; k <= 1; k++)
+                Void(flags.Row(y + (k * stepY)), stepX, row[..columns], levels);
+            if (model is not null)
+            {
+                model.VarianceByRow(stepX, y, levels[..columns], variances[..columns]);
+                Compare(row, variances, columns, rowRatios);
+            }
+
+            for (int x = 0; x < columns; x++)
             {
                 if (!double.IsFinite(row[x]))
                     continue;
-                // Six times a response is a whole number of steps; rounding makes equal ones equal to the bit.
-                double response = quantisationStep > 0 ? Math.Round(row[x] * 6 / quantisationStep) * quantisationStep / 6 : row[x];
                 if (model is not null)
-                    ratios[count] = response / Math.Sqrt(variances[x]);
-                responses[count++] = response;
+                    ratios[count] = rowRatios[x];
+                responses[count++] = row[x];
             }
         }
 
@@ -86,35 +95,58 @@ public static class DifferenceNoise
         return new NoiseMeasurement(sigma, ratio);
     }
 
-    /// <summary>Responses of one row and the means of their nine samples; NaN and 0 where a sample is unusable.</summary>
-    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
-    private static void Respond<T>(
-        Plane<T> values, Plane<SampleFlags> flags, int stepX, int stepY, int y, Span<double> responses, Span<double> levels)
+    private static void ToDouble<T>(ReadOnlySpan<T> samples, Span<double> values)
         where T : unmanaged, INumber<T>
     {
-        ReadOnlySpan<T> above = values.Row(y - stepY), here = values.Row(y), below = values.Row(y + stepY);
-        ReadOnlySpan<SampleFlags> flagsAbove = flags.Row(y - stepY), flagsHere = flags.Row(y), flagsBelow = flags.Row(y + stepY);
-        levels.Clear();
-        for (int x = stepX; x < here.Length - stepX; x++)
-        {
-            int w = x - stepX, e = x + stepX;
-            SampleFlags any = flagsAbove[w] | flagsAbove[x] | flagsAbove[e] | flagsHere[w] | flagsHere[x] | flagsHere[e]
-                | flagsBelow[w] | flagsBelow[x] | flagsBelow[e];
-            if ((any & Unusable) != 0)
-            {
-                responses[x] = double.NaN;
-                continue;
-            }
+        for (int x = 0; x < samples.Length; x++)
+            values[x] = double.CreateTruncating(samples[x]);
+    }
 
-            double corners = Sum(above[w], above[e], below[w], below[e]);
-            double sides = Sum(above[x], here[w], here[e], below[x]);
-            double centre = double.CreateTruncating(here[x]);
-            responses[x] = (corners - (2 * sides) + (4 * centre)) / 6;
-            levels[x] = (corners + sides + centre) / 9;
+    /// <summary>
+    /// Responses of one row and the means of their nine samples, the first of them those of column <paramref name="stepX"/>.
+    /// Six times a response is a whole number of steps; rounding makes equal ones equal to the bit.
+    /// </summary>
+    private static void Respond(Plane<double> three, int stepX, int columns, double quantisationStep, Span<double> responses, Span<double> levels)
+    {
+        ReadOnlySpan<double> above = three.Row(0), here = three.Row(1), below = three.Row(2);
+        for (int x = 0; x < columns; x += Vector512<double>.Count)
+        {
+            Vector512<double> corners = At(above, x) + At(above, x + (2 * stepX)) + (At(below, x) + At(below, x + (2 * stepX)));
+            Vector512<double> sides = At(above, x + stepX) + At(here, x) + (At(here, x + (2 * stepX)) + At(below, x + stepX));
+            Vector512<double> centre = At(here, x + stepX);
+            Vector512<double> response = (corners - (2 * sides) + (4 * centre)) / Vector512.Create(6.0);
+            if (quantisationStep > 0)
+                response = Vector512.Round(response * 6 / Vector512.Create(quantisationStep)) * quantisationStep / Vector512.Create(6.0);
+            response.CopyTo(responses[x..]);
+            Vector512<double> level = (corners + sides + centre) / Vector512.Create(9.0);
+            level.CopyTo(levels[x..]);
         }
     }
 
-    private static double Sum<T>(T a, T b, T c, T d)
-        where T : unmanaged, INumber<T> =>
-        double.CreateTruncating(a) + double.CreateTruncating(b) + (double.CreateTruncating(c) + double.CreateTruncating(d));
+    /// <summary>NaN and 0 where a response has an unusable sample in a row of flags.</summary>
+    private static void Void(ReadOnlySpan<SampleFlags> flags, int stepX, Span<double> responses, Span<double> levels)
+    {
+        for (int i = MemoryMarshal.AsBytes(flags).IndexOfAnyExcept((byte)0); i >= 0;)
+        {
+            for (int x = i - (2 * stepX); (flags[i] & Unusable) != 0 && x <= i; x += stepX)
+            {
+                if (x < 0 || x >= responses.Length)
+                    continue;
+                responses[x] = double.NaN;
+                levels[x] = 0;
+            }
+
+            int next = MemoryMarshal.AsBytes(flags[(i + 1)..]).IndexOfAnyExcept((byte)0);
+            i = next < 0 ? -1 : i + 1 + next;
+        }
+    }
+
+    /// <summary>Responses in units of the model's noise.</summary>
+    private static void Compare(ReadOnlySpan<double> responses, ReadOnlySpan<double> variances, int columns, Span<double> ratios)
+    {
+        for (int x = 0; x < columns; x += Vector512<double>.Count)
+            (At(responses, x) / Vector512.Sqrt(At(variances, x))).CopyTo(ratios[x..]);
+    }
+
+    private static Vector512<double> At(ReadOnlySpan<double> row, int x) => Vector512.Create(row.Slice(x, Vector512<double>.Count));
 }

@@ -79,6 +79,12 @@ public static class RankSelection
             }
 
             int digit = 0;
+            for (int many = Sum(table, 0); below + many <= rank; many = Sum(table, digit))
+            {
+                below += many;
+                digit += Vector512<int>.Count;
+            }
+
             while (below + table[digit] <= rank)
                 below += table[digit++];
             prefix |= (ulong)digit << shift;
@@ -113,7 +119,7 @@ public static class RankSelection
         return new RankedSample<double>(value, isBelow ? at.Below - equal : at.Below + at.Equal, equal);
     }
 
-    /// <summary>Two samples that very likely have a share of all samples between them: four standard errors to each side.</summary>
+    /// <summary>Two samples that very likely have a share of all samples between them: three standard errors to each side.</summary>
     private static (T Low, T High) Fences<T>(ReadOnlySpan<T> samples, ReadOnlySpan<SampleFlags> flags, SampleFlags without, double share)
         where T : unmanaged, INumber<T>
     {
@@ -129,7 +135,7 @@ public static class RankSelection
 
         few = few[..count];
         few.Sort();
-        double place = share * count, error = 4 * Math.Sqrt(count * share * (1 - share));
+        double place = share * count, error = 3 * Math.Sqrt(count * share * (1 - share));
         int first = (int)(place - error) - 1, last = (int)(place + error) + 1;
         (T low, T high) = Ends<T>();
         return (first >= 0 && first < count ? few[first] : low, last < count ? few[last] : high);
@@ -197,6 +203,9 @@ public static class RankSelection
                 table[(ushort)(key >> shift)]++;
         }
     }
+
+    /// <summary>Sum of a vector's worth of counts.</summary>
+    private static int Sum(ReadOnlySpan<int> table, int digit) => Vector512.Sum(Vector512.Create(table.Slice(digit, Vector512<int>.Count)));
 
     /// <summary>How many samples count.</summary>
     private static int Valid(int samples, ReadOnlySpan<SampleFlags> flags, SampleFlags without)
