@@ -1,5 +1,8 @@
+using System.Runtime.InteropServices;
 using Stacks.Abstractions;
+using Stacks.Formats.Fits;
 using Stacks.Pipeline;
+using Stacks.TestSupport;
 using Xunit;
 
 namespace Stacks.Tests.Engine;
@@ -35,6 +38,44 @@ public class MemoryTests
         double stated = FrameMemory.BytesOf(Assert.Single(FrameKinds.Of(Plan(bench))), mask: true);
         _ = Allocated(lattice, Side, 1);
         Assert.InRange(Allocated(lattice, Side, 1), 0.8 * stated, 1.02 * stated);
+    }
+
+    /// <summary>A whole run from file to file. A frame has 512 kB of samples; objects for its account may cost some kB.</summary>
+    [Theory]
+    [InlineData("")]
+    [InlineData("[noise]\nfrom = \"frame\"\n[[step]]\nfilter = \"adaptive-median\"\nlargest_window = 7\npsf_fwhm = 0\n")]
+    public void A_run_allocates_nothing_for_a_frame_after_warm_up(string recipe)
+    {
+        const int Side = 512, Frames = 44, From = 20, To = 40;
+        using TemporaryFolder folder = new();
+        Random random = new(9);
+        byte[][] stored = [.. Enumerable.Range(0, 4).Select(_ => new byte[2 * Side * Side])];
+        foreach (byte[] frame in stored)
+        {
+            Span<ushort> samples = MemoryMarshal.Cast<byte, ushort>(frame.AsSpan());
+            for (int i = 0; i < samples.Length; i++)
+                samples[i] = (ushort)(random.Next(1000) == 0 ? 5000 : 1000 + random.Next(40) + random.Next(40));
+        }
+
+        FrameLayout layout = new() { Width = Side, Height = Side, SampleType = SampleType.UInt16, QuantisationStep = 1 };
+        PassThrough.Run(new ForeignStack([.. Enumerable.Range(0, Frames).Select(f => (layout, stored[f % 4]))]), new FitsFormat(), folder.File("in.fits"));
+        Probe probe = new(From, To);
+        HostRun.Of(recipe, folder.File("in.fits"), folder.File("result.fits"), workers: 2, progress: probe);
+        Assert.InRange(probe.Bytes / (To - From), 0, 16384);
+    }
+
+    /// <summary>Bytes that the process allocates from one frame written to another.</summary>
+    private sealed class Probe(int from, int to) : IProgress<RunProgress>
+    {
+        public long Bytes { get; private set; }
+
+        public void Report(RunProgress value)
+        {
+            if (value.FramesDone == from)
+                Bytes = -GC.GetTotalAllocatedBytes(precise: true);
+            else if (value.FramesDone == to)
+                Bytes += GC.GetTotalAllocatedBytes(precise: true);
+        }
     }
 
     private static Bench WithFrames(Lattice lattice, int side, int frames)
