@@ -1,6 +1,7 @@
 using System.Buffers.Binary;
 using System.Globalization;
 using System.Numerics;
+using System.Runtime.CompilerServices;
 using System.Runtime.InteropServices;
 
 namespace Stacks.Formats.Fits;
@@ -12,6 +13,7 @@ internal static class FitsChecksum
     /// The sum over big-endian 32-bit words; bytes after the last whole word are taken as if zeros followed. Lanes of 64
     /// bits take the carries of 2^32 words; these come round at the end.
     /// </summary>
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     public static uint Sum(ReadOnlySpan<byte> bytes)
     {
         ReadOnlySpan<Vector<ushort>> vectors = MemoryMarshal.Cast<byte, Vector<ushort>>(bytes);

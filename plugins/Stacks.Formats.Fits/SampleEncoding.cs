@@ -1,4 +1,5 @@
 using System.Numerics;
+using System.Runtime.CompilerServices;
 using System.Runtime.InteropServices;
 using Stacks.Abstractions;
 
@@ -103,6 +104,7 @@ internal static class SampleEncoding
     }
 
     /// <summary>The same for as many whole vectors as there are; returns the bytes done.</summary>
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     private static int ReverseVectors<T>(ReadOnlySpan<byte> from, Span<byte> to, T flip)
         where T : unmanaged
     {

@@ -1,4 +1,5 @@
 using System.Numerics;
+using System.Runtime.CompilerServices;
 using System.Runtime.InteropServices;
 using System.Runtime.Intrinsics;
 using Stacks.Abstractions;
@@ -95,6 +96,7 @@ public static class DifferenceNoise
         return new NoiseMeasurement(sigma, ratio);
     }
 
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     private static void ToDouble<T>(ReadOnlySpan<T> samples, Span<double> values)
         where T : unmanaged, INumber<T>
     {
@@ -106,6 +108,7 @@ public static class DifferenceNoise
     /// Responses of one row and the means of their nine samples, the first of them those of column <paramref name="stepX"/>.
     /// Six times a response is a whole number of steps; rounding makes equal ones equal to the bit.
     /// </summary>
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     private static void Respond(Plane<double> three, int stepX, int columns, double quantisationStep, Span<double> responses, Span<double> levels)
     {
         ReadOnlySpan<double> above = three.Row(0), here = three.Row(1), below = three.Row(2);
@@ -142,6 +145,7 @@ public static class DifferenceNoise
     }
 
     /// <summary>Responses in units of the model's noise.</summary>
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     private static void Compare(ReadOnlySpan<double> responses, ReadOnlySpan<double> variances, int columns, Span<double> ratios)
     {
         for (int x = 0; x < columns; x += Vector512<double>.Count)

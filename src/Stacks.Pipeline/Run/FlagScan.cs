@@ -1,4 +1,5 @@
 using System.Numerics;
+using System.Runtime.CompilerServices;
 using System.Runtime.InteropServices;
 using Stacks.Abstractions;
 
@@ -16,6 +17,7 @@ internal static class FlagScan
     }
 
     /// <summary>Counts of every flag, in one pass.</summary>
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     public static FlagCounts CountAll(ReadOnlySpan<SampleFlags> flags)
     {
         FlagCounts counts = default;
@@ -39,6 +41,7 @@ internal static class FlagScan
     public static bool Any(ReadOnlySpan<SampleFlags> flags, SampleFlags flag) => NextOf(flags, 0, flag) >= 0;
 
     /// <summary>Index of the first sample from <paramref name="start"/> on that has a flag; -1 when there is none.</summary>
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     private static int NextOf(ReadOnlySpan<SampleFlags> flags, int start, SampleFlags flag)
     {
         ReadOnlySpan<byte> bytes = MemoryMarshal.AsBytes(flags);

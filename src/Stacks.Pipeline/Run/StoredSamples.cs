@@ -1,4 +1,5 @@
 using System.Numerics;
+using System.Runtime.CompilerServices;
 using System.Runtime.InteropServices;
 using Stacks.Abstractions;
 
@@ -90,6 +91,7 @@ internal sealed class StoredSamples<TStored> : StoredSamples
     }
 
     /// <summary>The first sample from a place on that may be not finite, BLANK or saturated: vectors without any are passed over.</summary>
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     private static int NextToMark(ReadOnlySpan<TStored> samples, int start, bool hasBlank, TStored blank, bool hasEnd, TStored least, TStored most)
     {
         if (!Vector<TStored>.IsSupported)
@@ -126,6 +128,7 @@ internal sealed class StoredSamples<TStored> : StoredSamples
     }
 
     /// <summary>The sum of a row of which no sample is missing.</summary>
+    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     private static long SumWhole(ReadOnlySpan<ushort> row)
     {
         const int longest = 1 << 16; // samples, of which each of a vector's 32-bit sums takes at most an eighth
