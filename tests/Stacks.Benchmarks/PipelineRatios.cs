@@ -12,7 +12,7 @@ namespace Stacks.Benchmarks;
 /// </summary>
 internal static class PipelineRatios
 {
-    private const int FewFrames = 8;
+    private const int FewFrames = 6;
 
     private const string Noise = "[noise]\nfrom = \"values\"\ngain = 10\nread_noise = 44.7\npedestal = 200\n";
 
@@ -21,7 +21,7 @@ internal static class PipelineRatios
     private const string Bilateral = Noise + "[[step]]\nfilter = \"bilateral\"\nspatial_sigma = 3.0\nrange_sigma = 2.5\nconserve_flux = false\n";
 
     /// <summary>Frames of the cube; STACKS_CUBE=100 makes it 840 MB.</summary>
-    private static int CubeFrames { get; } = int.TryParse(Environment.GetEnvironmentVariable("STACKS_CUBE"), out int frames) ? frames : 24;
+    private static int CubeFrames { get; } = int.TryParse(Environment.GetEnvironmentVariable("STACKS_CUBE"), out int frames) ? frames : 20;
 
     /// <summary>The rows.</summary>
     public static IEnumerable<Ratio> Of(Scene scene)
