@@ -72,9 +72,10 @@ internal sealed class OrdinalTile<T>
         for (int j = 0; j < height; j++)
         {
             rows.Copy(x, y + j, samples);
+            ReadOnlySpan<byte> outsiders = rows.AllTakePart ? [] : rows.Outsiders(y + j).Slice(x + rows.Radius, width);
             for (int i = 0; i < width; i++)
             {
-                if (!rows.AllTakePart && !rows.TakesPart(x + i, y + j))
+                if (outsiders.Length > 0 && outsiders[i] != 0)
                 {
                     Ordinals[(i << 8) | j] = None;
                     continue;
