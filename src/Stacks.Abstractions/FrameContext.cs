@@ -13,7 +13,7 @@ public interface IRowBands
 /// <summary>Pooled memory that lives until the running step returns.</summary>
 public interface IScratch
 {
-    /// <summary>A plane with undefined content. Safe to call from several bands at once.</summary>
+    /// <summary>A plane with undefined content, which does not move in memory until it is taken back. Safe to call from several bands at once.</summary>
     Plane<T> Rent<T>(int width, int height)
         where T : unmanaged;
 }
