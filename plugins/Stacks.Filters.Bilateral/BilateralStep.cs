@@ -20,8 +20,6 @@ internal sealed class BilateralStep<T>(
 
     private readonly T[] exponents = kernel.Exponents(T.CreateTruncating);
 
-    private delegate void RowWork(int y, Span<T> row);
-
     /// <summary>Bits of vectors to compute with, 0 for none; results are the same bits.</summary>
     public int VectorBits { get; init; } = RealLanes.Widest;
 
@@ -33,7 +31,8 @@ internal sealed class BilateralStep<T>(
 
     /// <inheritdoc/>
     public unsafe long ScratchBytes =>
-        ((long)kernel.Stride * kernel.Height * sizeof(T) * (conserveFlux ? 4 : 2)) + ((long)kernel.Height * 4 * sizeof(double)) + (8L * kernel.Stride * sizeof(double));
+        ((long)kernel.Stride * kernel.PaddedHeight * sizeof(T) * (conserveFlux ? 4 : 2)) + ((long)kernel.Stride * (kernel.RadiusY + 4) * sizeof(T))
+        + ((long)sizeof(double) * ((4 * kernel.Width) + (4 * kernel.Height)));
 
     /// <inheritdoc/>
     public IReadOnlyList<ResolvedParameter> Resolved => resolved;
@@ -61,58 +60,60 @@ internal sealed class BilateralStep<T>(
                 planes.FillRow(y, input, flags, noise, origin, scale, rows);
         });
 
-        Plane<T>? factors = conserveFlux ? Balance(planes, flags, context) : null;
-        ForEachRow(context, (y, changes) =>
+        if (conserveFlux)
         {
-            ReadOnlySpan<T> samples = input.Row(y);
-            ReadOnlySpan<SampleFlags> known = flags.Row(y);
-            Span<T> results = output.Row(y);
-            if (factors is { } c)
+            Plane<T> factors = Balance(planes, flags, context);
+            ForEachPairSum<OfChanges>(planes, factors, context, (y, sums) =>
             {
-                RealLanes.Run<ExchangeSums<T>, T>(new(kernel, exponents, planes, c, y, changes), kernel.Width, VectorBits);
-                ReadOnlySpan<T> own = planes.Inner(c, y);
-                for (int x = 0; x < samples.Length; x++)
-                    changes[x] *= own[x];
-            }
-            else
-            {
-                RealLanes.Run<PixelSums<T>, T>(new(kernel, exponents, planes, y, changes), kernel.Width, VectorBits);
-            }
+                ReadOnlySpan<T> own = planes.Inner(factors, y);
+                for (int x = 0; x < own.Length; x++)
+                    sums[x] *= own[x];
+                AddTo(input.Row(y), flags.Row(y), sums, output.Row(y));
+            });
+            return;
+        }
 
-            for (int x = 0; x < samples.Length; x++)
-                results[x] = GuideLevels.TakesPart(known[x]) ? samples[x] + changes[x] : samples[x];
+        context.Bands.ForEach(kernel.Height, (first, end) =>
+        {
+            Plane<T> changes = context.Scratch.Rent<T>(RealLanes.Padded(kernel.Width), 1);
+            for (int y = first; y < end; y++)
+            {
+                context.Cancellation.ThrowIfCancellationRequested();
+                RealLanes.Run<PixelSums<T>, T>(new(kernel, exponents, planes, y, changes.Row(0)), VectorBits);
+                AddTo(input.Row(y), flags.Row(y), changes.Row(0), output.Row(y));
+            }
         });
     }
 
     /// <summary>The c of the flux-conserving form, in a padded plane; 0 where pixels take no part.</summary>
     internal Plane<T> Balance(GuidedPlanes<T> planes, Plane<SampleFlags> flags, FrameContext context)
     {
-        Plane<T> factors = context.Scratch.Rent<T>(kernel.Stride, kernel.Height), next = context.Scratch.Rent<T>(kernel.Stride, kernel.Height);
+        Plane<T> factors = context.Scratch.Rent<T>(kernel.Stride, kernel.PaddedHeight), next = context.Scratch.Rent<T>(kernel.Stride, kernel.PaddedHeight);
         factors.Samples.Clear();
         next.Samples.Clear();
-        for (int y = 0; y < kernel.Height; y++)
+        context.Bands.ForEach(kernel.Height, (first, end) =>
         {
-            Span<T> row = planes.Inner(factors, y);
-            for (int x = 0; x < row.Length; x++)
-                row[x] = GuideLevels.TakesPart(flags[x, y]) ? T.One : T.Zero;
-        }
+            for (int y = first; y < end; y++)
+            {
+                Span<T> row = planes.Inner(factors, y);
+                ReadOnlySpan<SampleFlags> known = flags.Row(y);
+                for (int x = 0; x < known.Length; x++)
+                    row[x] = GuideLevels.TakesPart(known[x]) ? T.One : T.Zero;
+            }
+        });
 
         for (int pass = 0; pass < Rounds + 2; pass++)
         {
-            ForEachRow(context, (y, sums) =>
+            ForEachPairSum<OfFactors>(planes, factors, context, (y, sums) =>
             {
-                RealLanes.Run<FactorSums<T>, T>(new(kernel, exponents, planes, factors, y, sums), kernel.Width, VectorBits);
                 ReadOnlySpan<T> own = planes.Inner(factors, y);
                 Span<T> results = planes.Inner(next, y);
                 for (int x = 0; x < own.Length; x++)
-                {
-                    T c = own[x];
-                    if (c == T.Zero)
-                        continue;
-                    results[x] = pass <= Rounds
-                        ? T.Sqrt(c / sums[x])
-                        : c / T.Max(T.One, c * (sums[x] - c));
-                }
+                    sums[x] += own[x];
+                if (pass <= Rounds)
+                    RealLanes.Run<FactorRound<T>, T>(new(own, sums, results), VectorBits);
+                else
+                    RealLanes.Run<FactorLimit<T>, T>(new(own, sums, results), VectorBits);
             });
             (factors, next) = (next, factors);
         }
@@ -120,13 +121,38 @@ internal sealed class BilateralStep<T>(
         return factors;
     }
 
-    private void ForEachRow(FrameContext context, RowWork work) => context.Bands.ForEach(kernel.Height, (first, end) =>
+    /// <summary>
+    /// Sums over the q around every p but p itself, row by row. A band begins with the rows before it that reach into it, so
+    /// that its sums are added up in the same order wherever the frame is cut.
+    /// </summary>
+    private void ForEachPairSum<TTerm>(GuidedPlanes<T> planes, Plane<T> factors, FrameContext context, Action<int, Span<T>> finish)
+        where TTerm : struct, IPairTerm => context.Bands.ForEach(kernel.Height, (first, end) =>
     {
-        Plane<T> sums = context.Scratch.Rent<T>(RealLanes.Padded(kernel.Width), 1);
-        for (int y = first; y < end; y++)
+        Plane<T> given = context.Scratch.Rent<T>(kernel.Stride, 2), taken = context.Scratch.Rent<T>(kernel.Stride, kernel.RadiusY + 2);
+        taken.Samples.Clear();
+        for (int y = Math.Max(0, first - kernel.RadiusY) & ~1; y < end; y += 2)
         {
             context.Cancellation.ThrowIfCancellationRequested();
-            work(y, sums.Row(0));
+            given.Samples.Clear();
+            RealLanes.Run<PairSums<T, TTerm>, T>(new(kernel, exponents, planes, factors, y, given, taken), VectorBits);
+            for (int row = 0; row < 2; row++)
+            {
+                Span<T> sums = planes.Inner(given, row);
+                ReadOnlySpan<T> others = planes.Inner(taken, row);
+                for (int x = 0; x < sums.Length; x++)
+                    sums[x] += others[x];
+                if (y + row >= first && y + row < end)
+                    finish(y + row, sums);
+            }
+
+            taken.Samples[(2 * kernel.Stride)..].CopyTo(taken.Samples);
+            taken.Samples[^(2 * kernel.Stride)..].Clear();
         }
     });
+
+    private static void AddTo(ReadOnlySpan<T> samples, ReadOnlySpan<SampleFlags> flags, ReadOnlySpan<T> changes, Span<T> results)
+    {
+        for (int x = 0; x < samples.Length; x++)
+            results[x] = GuideLevels.TakesPart(flags[x]) ? samples[x] + changes[x] : samples[x];
+    }
 }

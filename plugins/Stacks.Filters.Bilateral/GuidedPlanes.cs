@@ -8,7 +8,7 @@ namespace Stacks.Filters.Bilateral;
 /// <summary>
 /// A frame as the kernels read it: linear values v, and the guide, T times a scale that makes 2^-(difference squared) the
 /// weight in range. T counts from its value at the frame's mean, so that a pedestal costs no digits. Rows are padded left and
-/// right, so that sums need no border rule: there, and where a pixel takes no part (missing, saturated), v = 0 and the guide
+/// right, planes below, so that sums need no border rule: there, and where a pixel takes no part (missing, saturated), v = 0 and the guide
 /// is <see cref="Apart"/>, too far from every other for a weight that counts.
 /// </summary>
 internal readonly struct GuidedPlanes<T>
@@ -18,13 +18,18 @@ internal readonly struct GuidedPlanes<T>
     private readonly int padding;
     private readonly int width;
 
-    /// <summary>Rents planes and leaves them unfilled.</summary>
+    /// <summary>Rents planes and leaves the frame's rows unfilled.</summary>
     public GuidedPlanes(SpatialKernel kernel, IScratch scratch)
     {
         padding = kernel.RadiusX;
         width = kernel.Width;
-        Values = scratch.Rent<T>(kernel.Stride, kernel.Height);
-        Guide = scratch.Rent<T>(kernel.Stride, kernel.Height);
+        Values = scratch.Rent<T>(kernel.Stride, kernel.PaddedHeight);
+        Guide = scratch.Rent<T>(kernel.Stride, kernel.PaddedHeight);
+        for (int y = kernel.Height; y < kernel.PaddedHeight; y++)
+        {
+            Values.Row(y).Clear();
+            Guide.Row(y).Fill(Apart);
+        }
     }
 
     /// <summary>v.</summary>

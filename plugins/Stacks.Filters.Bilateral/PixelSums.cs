@@ -23,6 +23,7 @@ internal readonly ref struct PixelSums<T>(SpatialKernel kernel, T[] exponents, G
     private readonly ref T values = ref planes.StartOfRow(planes.Values, y);
     private readonly ref T guide = ref planes.StartOfRow(planes.Guide, y);
     private readonly ref T changes = ref changes[0];
+    private readonly int width = kernel.Width;
     private readonly int stride = kernel.Stride;
     private readonly int radius = kernel.RadiusX;
     private readonly int first = -Math.Min(y, kernel.RadiusY);
@@ -30,7 +31,15 @@ internal readonly ref struct PixelSums<T>(SpatialKernel kernel, T[] exponents, G
 
     /// <inheritdoc/>
     [MethodImpl(MethodImplOptions.AggressiveOptimization)]
-    public void At<TLanes>(int x)
+    public void Compute<TLanes>()
+        where TLanes : struct, IRealLanes<TLanes, T>
+    {
+        for (int x = 0; x < width; x += TLanes.Count)
+            Pixels<TLanes>(x);
+    }
+
+    [MethodImpl(MethodImplOptions.AggressiveInlining)]
+    private void Pixels<TLanes>(int x)
         where TLanes : struct, IRealLanes<TLanes, T>
     {
         TLanes ownValue = TLanes.Load(ref values, x), ownGuide = TLanes.Load(ref guide, x);

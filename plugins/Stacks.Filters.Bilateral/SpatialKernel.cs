@@ -13,6 +13,7 @@ internal sealed class SpatialKernel
     public const double Cut = 4.5;
 
     private readonly int[] halfWidths;
+    private readonly int[] heights;
     private readonly double sigma;
 
     /// <summary>A kernel for frames of one shape.</summary>
@@ -29,6 +30,7 @@ internal sealed class SpatialKernel
         Height = height;
         Stride = checked(RealLanes.Padded(width) + (2 * RadiusX));
         halfWidths = [.. Enumerable.Range(0, RadiusY + 1).Select(dy => (int)Math.Min(Math.Sqrt((radius * radius) - ((double)dy * dy)), RadiusX))];
+        heights = [.. Enumerable.Range(0, RadiusX + 1).Select(dx => (int)Math.Min(Math.Sqrt((radius * radius) - ((double)dx * dx)), RadiusY))];
     }
 
     /// <summary>Frame width.</summary>
@@ -48,6 +50,12 @@ internal sealed class SpatialKernel
 
     /// <summary>Reach along x in the rows dy = 0 ... <see cref="RadiusY"/> away.</summary>
     public ReadOnlySpan<int> HalfWidths => halfWidths;
+
+    /// <summary>Reach along y in the columns dx = 0 ... <see cref="RadiusX"/> away.</summary>
+    public ReadOnlySpan<int> Heights => heights;
+
+    /// <summary>Rows of a padded plane: the frame's, and as many below as a pair of rows reaches behind the last.</summary>
+    public int PaddedHeight => Height + RadiusY + 2;
 
     /// <summary>log2 of the weight in space of every place: rows dy = 0 ... RadiusY, columns dx = -RadiusX ... RadiusX.</summary>
     public T[] Exponents<T>(Func<double, T> rounded)

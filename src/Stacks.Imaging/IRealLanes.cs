@@ -56,12 +56,12 @@ public interface IRealLanes<TSelf, T>
     static abstract TSelf operator /(TSelf a, TSelf b);
 }
 
-/// <summary>What is computed for neighbouring pixels of a row at once.</summary>
+/// <summary>What is computed in lanes.</summary>
 /// <typeparam name="T">float or double.</typeparam>
 public interface IRealKernel<T>
     where T : unmanaged
 {
-    /// <summary>Computes the pixels from column <paramref name="x"/> on, as many as there are lanes.</summary>
-    void At<TLanes>(int x)
+    /// <summary>Computes all of it, as many pixels at once as there are lanes.</summary>
+    void Compute<TLanes>()
         where TLanes : struct, IRealLanes<TLanes, T>;
 }

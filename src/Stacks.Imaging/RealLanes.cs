@@ -5,7 +5,7 @@ using System.Runtime.Intrinsics.X86;
 
 namespace Stacks.Imaging;
 
-/// <summary>Runs kernels over the pixels of a row.</summary>
+/// <summary>Runs kernels in vectors of a given width.</summary>
 public static class RealLanes
 {
     /// <summary>Pixels that every width goes into; rows of kernels are padded to a multiple of it.</summary>
@@ -21,38 +21,28 @@ public static class RealLanes
     public static int Widest { get; } =
         Vector512.IsHardwareAccelerated ? 512 : Vector256.IsHardwareAccelerated ? 256 : Vector128.IsHardwareAccelerated ? 128 : 0;
 
-    /// <summary>Computes columns [0, width) rounded up to a multiple of <see cref="Most"/>.</summary>
+    /// <summary>Computes a kernel.</summary>
     /// <param name="kernel">The kernel.</param>
-    /// <param name="width">Pixels in the row.</param>
     /// <param name="bits">Width of vectors in bits: 512, 256, 128, or 0 for the scalar form.</param>
-    public static void Run<TKernel, T>(TKernel kernel, int width, int bits)
+    public static void Run<TKernel, T>(TKernel kernel, int bits)
         where TKernel : struct, IRealKernel<T>, allows ref struct
         where T : unmanaged, IBinaryFloatingPointIeee754<T>
     {
         switch (bits)
         {
             case 512:
-                Run<TKernel, T, RealLanes512<T>>(kernel, width);
+                kernel.Compute<RealLanes512<T>>();
                 break;
             case 256:
-                Run<TKernel, T, RealLanes256<T>>(kernel, width);
+                kernel.Compute<RealLanes256<T>>();
                 break;
             case 128:
-                Run<TKernel, T, RealLanes128<T>>(kernel, width);
+                kernel.Compute<RealLanes128<T>>();
                 break;
             default:
-                Run<TKernel, T, RealLane<T>>(kernel, width);
+                kernel.Compute<RealLane<T>>();
                 break;
         }
-    }
-
-    private static void Run<TKernel, T, TLanes>(TKernel kernel, int width)
-        where TKernel : struct, IRealKernel<T>, allows ref struct
-        where T : unmanaged
-        where TLanes : struct, IRealLanes<TLanes, T>
-    {
-        for (int x = 0; x < Padded(width); x += TLanes.Count)
-            kernel.At<TLanes>(x);
     }
 
     /// <summary>A width rounded up to a multiple of <see cref="Most"/>.</summary>
