@@ -43,6 +43,7 @@ internal readonly ref struct PairSums<T, TTerm>(
     public void Compute<TLanes>()
         where TLanes : struct, IRealLanes<TLanes, T>
     {
+        PowerOfTwo<TLanes, T> power = new();
         for (int block = 0; block < width; block += Block)
         {
             for (int dx = -radius; dx <= radius; dx++)
@@ -52,14 +53,14 @@ internal readonly ref struct PairSums<T, TTerm>(
                 if (last < first)
                     continue;
                 for (int x = block; x < Math.Min(block + Block, width); x += TLanes.Count)
-                    Column<TLanes>(x, dx, first, last);
+                    Column(x, dx, first, last, power);
             }
         }
     }
 
     /// <summary>Pairs of neighbouring p in both rows with the q that are dx columns and first ... last rows away.</summary>
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
-    private void Column<TLanes>(int x, int dx, int first, int last)
+    private void Column<TLanes>(int x, int dx, int first, int last, PowerOfTwo<TLanes, T> power)
         where TLanes : struct, IRealLanes<TLanes, T>
     {
         nint second = (nint)stride + x, row = (nint)stride * first, side = (2 * radius) + 1, place = (first * side) + radius + dx;
@@ -69,32 +70,32 @@ internal readonly ref struct PairSums<T, TTerm>(
         TLanes sum1 = TLanes.Load(ref given, x), sum2 = TLanes.Load(ref given, second);
         nint q = x + dx + row;
         TLanes got = TLanes.Load(ref taken, q);
-        Add(q, place, guide1, factor1, value1, ref sum1, ref got);
+        Add(power, q, place, guide1, factor1, value1, ref sum1, ref got);
         got.Store(ref taken, q);
         for (int dy = first + 1; dy <= last; dy++)
         {
             q += stride;
             got = TLanes.Load(ref taken, q);
-            Add(q, place + side, guide1, factor1, value1, ref sum1, ref got);
-            Add(q, place, guide2, factor2, value2, ref sum2, ref got);
+            Add(power, q, place + side, guide1, factor1, value1, ref sum1, ref got);
+            Add(power, q, place, guide2, factor2, value2, ref sum2, ref got);
             got.Store(ref taken, q);
             place += side;
         }
 
         q += stride;
         got = TLanes.Load(ref taken, q);
-        Add(q, place, guide2, factor2, value2, ref sum2, ref got);
+        Add(power, q, place, guide2, factor2, value2, ref sum2, ref got);
         got.Store(ref taken, q);
         sum1.Store(ref given, x);
         sum2.Store(ref given, second);
     }
 
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
-    private void Add<TLanes>(nint q, nint place, TLanes ownGuide, TLanes ownFactor, TLanes ownValue, ref TLanes sum, ref TLanes got)
+    private void Add<TLanes>(PowerOfTwo<TLanes, T> power, nint q, nint place, TLanes ownGuide, TLanes ownFactor, TLanes ownValue, ref TLanes sum, ref TLanes got)
         where TLanes : struct, IRealLanes<TLanes, T>
     {
         TLanes apart = TLanes.Load(ref guide, q) - ownGuide;
-        TLanes w = PowerOfTwo.Of<TLanes, T>(TLanes.MultiplySubtract(apart, apart, TLanes.Repeat(ref places, place)));
+        TLanes w = power.Of(TLanes.MultiplySubtract(apart, apart, TLanes.Repeat(ref places, place)));
         if (TTerm.HasValues)
         {
             TLanes change = w * (TLanes.Load(ref values, q) - ownValue);

@@ -34,12 +34,13 @@ internal readonly ref struct PixelSums<T>(SpatialKernel kernel, T[] exponents, G
     public void Compute<TLanes>()
         where TLanes : struct, IRealLanes<TLanes, T>
     {
+        PowerOfTwo<TLanes, T> power = new();
         for (int x = 0; x < width; x += TLanes.Count)
-            Pixels<TLanes>(x);
+            Pixels(x, power);
     }
 
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
-    private void Pixels<TLanes>(int x)
+    private void Pixels<TLanes>(int x, PowerOfTwo<TLanes, T> power)
         where TLanes : struct, IRealLanes<TLanes, T>
     {
         TLanes ownValue = TLanes.Load(ref values, x), ownGuide = TLanes.Load(ref guide, x);
@@ -52,7 +53,7 @@ internal readonly ref struct PixelSums<T>(SpatialKernel kernel, T[] exponents, G
             for (nint dx = -half; dx <= half; dx++)
             {
                 TLanes apart = TLanes.Load(ref guide, row + dx) - ownGuide;
-                TLanes w = PowerOfTwo.Of<TLanes, T>(TLanes.MultiplySubtract(apart, apart, TLanes.Repeat(ref places, place + dx)));
+                TLanes w = power.Of(TLanes.MultiplySubtract(apart, apart, TLanes.Repeat(ref places, place + dx)));
                 rowWeight += w;
                 rowChange = TLanes.MultiplyAdd(w, TLanes.Load(ref values, row + dx) - ownValue, rowChange);
             }

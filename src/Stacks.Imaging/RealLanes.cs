@@ -80,9 +80,17 @@ internal readonly struct RealLanes512<T>(Vector512<T> lanes) : IRealLanes<RealLa
         : new(Vector512.FusedMultiplyAdd(a.lanes.AsDouble(), b.lanes.AsDouble(), c.lanes.AsDouble()).As<double, T>());
 
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
-    public static RealLanes512<T> MultiplySubtract(RealLanes512<T> a, RealLanes512<T> b, RealLanes512<T> c) => typeof(T) == typeof(float)
-        ? new(Vector512.FusedMultiplyAdd(-a.lanes.AsSingle(), b.lanes.AsSingle(), c.lanes.AsSingle()).As<float, T>())
-        : new(Vector512.FusedMultiplyAdd(-a.lanes.AsDouble(), b.lanes.AsDouble(), c.lanes.AsDouble()).As<double, T>());
+    public static RealLanes512<T> MultiplySubtract(RealLanes512<T> a, RealLanes512<T> b, RealLanes512<T> c)
+    {
+        if (Avx512F.IsSupported)
+        {
+            return typeof(T) == typeof(float)
+                ? new(Avx512F.FusedMultiplyAddNegated(a.lanes.AsSingle(), b.lanes.AsSingle(), c.lanes.AsSingle()).As<float, T>())
+                : new(Avx512F.FusedMultiplyAddNegated(a.lanes.AsDouble(), b.lanes.AsDouble(), c.lanes.AsDouble()).As<double, T>());
+        }
+
+        return MultiplyAdd(new(-a.lanes), b, c);
+    }
 
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
     public static RealLanes512<T> Round(RealLanes512<T> a) => typeof(T) == typeof(float)
@@ -151,9 +159,17 @@ internal readonly struct RealLanes256<T>(Vector256<T> lanes) : IRealLanes<RealLa
         : new(Vector256.FusedMultiplyAdd(a.lanes.AsDouble(), b.lanes.AsDouble(), c.lanes.AsDouble()).As<double, T>());
 
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
-    public static RealLanes256<T> MultiplySubtract(RealLanes256<T> a, RealLanes256<T> b, RealLanes256<T> c) => typeof(T) == typeof(float)
-        ? new(Vector256.FusedMultiplyAdd(-a.lanes.AsSingle(), b.lanes.AsSingle(), c.lanes.AsSingle()).As<float, T>())
-        : new(Vector256.FusedMultiplyAdd(-a.lanes.AsDouble(), b.lanes.AsDouble(), c.lanes.AsDouble()).As<double, T>());
+    public static RealLanes256<T> MultiplySubtract(RealLanes256<T> a, RealLanes256<T> b, RealLanes256<T> c)
+    {
+        if (Fma.IsSupported)
+        {
+            return typeof(T) == typeof(float)
+                ? new(Fma.MultiplyAddNegated(a.lanes.AsSingle(), b.lanes.AsSingle(), c.lanes.AsSingle()).As<float, T>())
+                : new(Fma.MultiplyAddNegated(a.lanes.AsDouble(), b.lanes.AsDouble(), c.lanes.AsDouble()).As<double, T>());
+        }
+
+        return MultiplyAdd(new(-a.lanes), b, c);
+    }
 
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
     public static RealLanes256<T> Round(RealLanes256<T> a) => typeof(T) == typeof(float)
@@ -215,9 +231,17 @@ internal readonly struct RealLanes128<T>(Vector128<T> lanes) : IRealLanes<RealLa
         : new(Vector128.FusedMultiplyAdd(a.lanes.AsDouble(), b.lanes.AsDouble(), c.lanes.AsDouble()).As<double, T>());
 
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
-    public static RealLanes128<T> MultiplySubtract(RealLanes128<T> a, RealLanes128<T> b, RealLanes128<T> c) => typeof(T) == typeof(float)
-        ? new(Vector128.FusedMultiplyAdd(-a.lanes.AsSingle(), b.lanes.AsSingle(), c.lanes.AsSingle()).As<float, T>())
-        : new(Vector128.FusedMultiplyAdd(-a.lanes.AsDouble(), b.lanes.AsDouble(), c.lanes.AsDouble()).As<double, T>());
+    public static RealLanes128<T> MultiplySubtract(RealLanes128<T> a, RealLanes128<T> b, RealLanes128<T> c)
+    {
+        if (Fma.IsSupported)
+        {
+            return typeof(T) == typeof(float)
+                ? new(Fma.MultiplyAddNegated(a.lanes.AsSingle(), b.lanes.AsSingle(), c.lanes.AsSingle()).As<float, T>())
+                : new(Fma.MultiplyAddNegated(a.lanes.AsDouble(), b.lanes.AsDouble(), c.lanes.AsDouble()).As<double, T>());
+        }
+
+        return MultiplyAdd(new(-a.lanes), b, c);
+    }
 
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
     public static RealLanes128<T> Round(RealLanes128<T> a) => typeof(T) == typeof(float)

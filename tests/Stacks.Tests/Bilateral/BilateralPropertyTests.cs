@@ -1,3 +1,4 @@
+using System.Numerics;
 using FsCheck;
 using FsCheck.Xunit;
 using Stacks.Abstractions;
@@ -12,21 +13,24 @@ public class BilateralPropertyTests
 {
     private static readonly LinearNoise Camera = new(0.5, 400, 20);
 
-    private static BilateralStep<double> Step(Plane<double> plane, bool conserve, int? vectors = null)
+    private static BilateralStep<T> Step<T>(Plane<T> plane, bool conserve, int? vectors = null)
+        where T : unmanaged, IBinaryFloatingPointIeee754<T>
     {
         SpatialKernel kernel = new(1.3, plane.Width, plane.Height);
         return vectors is { } bits
-            ? new BilateralStep<double>(kernel, 2.5, conserve, []) { VectorBits = bits }
-            : new BilateralStep<double>(kernel, 2.5, conserve, []);
+            ? new BilateralStep<T>(kernel, 2.5, conserve, []) { VectorBits = bits }
+            : new BilateralStep<T>(kernel, 2.5, conserve, []);
     }
 
     [Property(MaxTest = 40)]
     public void Constants_stay_constant_to_the_bit(PositiveInt width, PositiveInt height, int seed, bool conserve)
     {
         double level = 1000 * new Random(seed).NextDouble();
-        Plane<double> plane = FilterRun.PlaneOf(1 + (width.Get % 30), 1 + (height.Get % 30), (_, _) => level);
-        Plane<double> result = FilterRun.Smooth(Step(plane, conserve), plane, noise: Camera);
-        Xunit.Assert.All(result.Samples.ToArray(), v => Xunit.Assert.Equal(level, v));
+        (int columns, int rows) = (1 + (width.Get % 30), 1 + (height.Get % 30));
+        Plane<double> wide = FilterRun.PlaneOf(columns, rows, (_, _) => level);
+        Xunit.Assert.All(FilterRun.Smooth(Step(wide, conserve), wide, noise: Camera).Samples.ToArray(), v => Xunit.Assert.Equal(level, v));
+        Plane<float> narrow = FilterRun.PlaneOf(columns, rows, (_, _) => (float)level);
+        Xunit.Assert.All(FilterRun.Smooth(Step(narrow, conserve), narrow, noise: Camera).Samples.ToArray(), v => Xunit.Assert.Equal((float)level, v));
     }
 
     [Property(MaxTest = 40)]
@@ -50,12 +54,20 @@ public class BilateralPropertyTests
     [Property(MaxTest = 25)]
     public void Bands_and_vector_widths_do_not_change_a_bit(PositiveInt width, PositiveInt height, int seed, bool conserve)
     {
-        SmoothingScene scene = new(1 + (width.Get % 40), 1 + (height.Get % 40), seed, missing: 0.1, saturated: 0.05);
-        double[] scalar = FilterRun.Smooth(Step(scene.Plane, conserve, vectors: 0), scene.Plane, scene.Flags, Camera).Samples.ToArray();
+        // Wider than a vector of floats, and than a block of columns in some cases.
+        SmoothingScene scene = new(1 + (width.Get * 7 % 170), 1 + (height.Get % 40), seed, missing: 0.1, saturated: 0.05);
+        SameBits(scene.Plane, scene.Flags, conserve);
+        SameBits(FilterRun.PlaneOf(scene.Plane.Width, scene.Plane.Height, (x, y) => (float)scene.Plane[x, y]), scene.Flags, conserve);
+    }
+
+    private static void SameBits<T>(Plane<T> plane, Plane<SampleFlags> flags, bool conserve)
+        where T : unmanaged, IBinaryFloatingPointIeee754<T>
+    {
+        T[] scalar = FilterRun.Smooth(Step(plane, conserve, vectors: 0), plane, flags, Camera).Samples.ToArray();
         foreach (int bits in new[] { 128, 256, 512 })
-            Xunit.Assert.Equal(scalar, FilterRun.Smooth(Step(scene.Plane, conserve, bits), scene.Plane, scene.Flags, Camera).Samples.ToArray());
+            Xunit.Assert.Equal(scalar, FilterRun.Smooth(Step(plane, conserve, bits), plane, flags, Camera).Samples.ToArray());
         foreach (int bands in new[] { 2, 5 })
-            Xunit.Assert.Equal(scalar, FilterRun.Smooth(Step(scene.Plane, conserve), scene.Plane, scene.Flags, Camera, bands).Samples.ToArray());
+            Xunit.Assert.Equal(scalar, FilterRun.Smooth(Step(plane, conserve), plane, flags, Camera, bands).Samples.ToArray());
     }
 
     [Property(MaxTest = 25)]
