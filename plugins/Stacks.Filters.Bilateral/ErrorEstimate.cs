@@ -127,7 +127,7 @@ internal static class ErrorEstimate
                 c[x] = !takesPart ? 0 : factors is { } known ? known[left + x, y] : 1;
             }
 
-            RealLanes.Run<ColumnSums, double>(new(rows, -(double)(y - py) * (y - py) * perSquare), width, RealLanes.Widest);
+            RealLanes.Run<ColumnSums, double>(new(rows, -(double)(y - py) * (y - py) * perSquare, width), RealLanes.Widest);
         }
 
         double weight = 0, exchange = 0;
@@ -141,7 +141,7 @@ internal static class ErrorEstimate
     }
 
     /// <summary>Adds w c and w c (v_q - v_p) of a row of q to each column's sums.</summary>
-    private readonly ref struct ColumnSums(Plane<double> rows, double place) : IRealKernel<double>
+    private readonly ref struct ColumnSums(Plane<double> rows, double place, int width) : IRealKernel<double>
     {
         private readonly ref double weights = ref rows.Row(0)[0];
         private readonly ref double exchanges = ref rows.Row(1)[0];
@@ -150,16 +150,21 @@ internal static class ErrorEstimate
         private readonly ref double differences = ref rows.Row(4)[0];
         private readonly ref double factors = ref rows.Row(5)[0];
         private readonly double place = place;
+        private readonly int width = width;
 
         /// <inheritdoc/>
-        public void At<TLanes>(int x)
+        public void Compute<TLanes>()
             where TLanes : struct, IRealLanes<TLanes, double>
         {
-            TLanes inRange = TLanes.Load(ref apart, x);
-            TLanes exponent = TLanes.MultiplySubtract(inRange, inRange, TLanes.Load(ref places, x) + TLanes.All(place));
-            TLanes w = PowerOfTwo.Of<TLanes, double>(exponent) * TLanes.Load(ref factors, x);
-            (TLanes.Load(ref weights, x) + w).Store(ref weights, x);
-            (TLanes.Load(ref exchanges, x) + (w * TLanes.Load(ref differences, x))).Store(ref exchanges, x);
+            PowerOfTwo<TLanes, double> power = new();
+            for (int x = 0; x < width; x += TLanes.Count)
+            {
+                TLanes inRange = TLanes.Load(ref apart, x);
+                TLanes exponent = TLanes.MultiplySubtract(inRange, inRange, TLanes.Load(ref places, x) + TLanes.All(place));
+                TLanes w = power.Of(exponent) * TLanes.Load(ref factors, x);
+                (TLanes.Load(ref weights, x) + w).Store(ref weights, x);
+                (TLanes.Load(ref exchanges, x) + (w * TLanes.Load(ref differences, x))).Store(ref exchanges, x);
+            }
         }
     }
 }
