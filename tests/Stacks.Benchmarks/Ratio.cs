@@ -47,12 +47,12 @@ internal sealed record Ratio(string Name, double Ours, double Reference, Goal Go
     /// <summary>Says why rows are not there.</summary>
     public static void LeftOut(string rows, string reason) => Console.Error.WriteLine($"left out: {rows}: {reason}");
 
-    /// <summary>A line, tab-separated: name, ours, reference, ratio, goal, met or below.</summary>
+    /// <summary>A line, tab-separated: name, ours, reference, ratio, goal, met or below; shown where there is no goal.</summary>
     public override string ToString()
     {
         double ratio = Goal.OfTimes ? Ours / Reference : Reference / Ours;
         return string.Create(
-            CultureInfo.InvariantCulture, $"{Name}\t{Milliseconds(Ours)}\t{Milliseconds(Reference)}\t{ratio:F2}\t{Goal}\t{(Goal.IsMetBy(ratio) ? "met" : "below")}");
+            CultureInfo.InvariantCulture, $"{Name}\t{Milliseconds(Ours)}\t{Milliseconds(Reference)}\t{ratio:F2}\t{Goal}\t{(Goal == default ? "shown" : Goal.IsMetBy(ratio) ? "met" : "below")}");
     }
 
     private static string Milliseconds(double seconds) => string.Create(CultureInfo.InvariantCulture, $"{seconds * 1e3:G4} ms");
@@ -93,5 +93,5 @@ internal readonly record struct Goal(double Bound, bool OfTimes)
     public bool IsMetBy(double ratio) => OfTimes ? ratio <= Bound : ratio >= Bound;
 
     /// <inheritdoc/>
-    public override string ToString() => string.Create(CultureInfo.InvariantCulture, $"{(OfTimes ? "<=" : ">=")} {Bound:F2}");
+    public override string ToString() => this == default ? "none" : string.Create(CultureInfo.InvariantCulture, $"{(OfTimes ? "<=" : ">=")} {Bound:F2}");
 }
