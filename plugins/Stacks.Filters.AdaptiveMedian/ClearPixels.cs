@@ -67,7 +67,7 @@ internal sealed class ClearPixels<T>(ImpulseRules rules, NoiseModel noise, IScra
         Singles.From(blocks.Values(1, row), medians);
         Singles.From(blocks.Values(2, row), upper);
         noise.VarianceByRow(blocks.X, blocks.Y + row, medians.AsSpan(0, width), variances.AsSpan(0, width));
-        double range = rules.Trust * NormalOrderStatistics.InterquartileRange(windows.FullCount(window));
+        double range = rules.Trust * windows.FullRange(window);
         Vector512<float> perRange = Vector512.Create((float)(range * range)), perDistance = Vector512.Create((float)(rules.Threshold * rules.Threshold));
         Vector512<float> step = Vector512.Create((float)rules.QuantisationStep);
         Vector512<float> wider = Vector512.Create(1 + RangeMargin), narrower = Vector512.Create(1 - RangeMargin);

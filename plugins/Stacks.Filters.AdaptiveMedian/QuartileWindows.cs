@@ -22,6 +22,7 @@ internal sealed class QuartileKernels
 
         Quantiles = quantiles;
         Ranks = ranks;
+        FullRanges = [.. quantiles.Select(q => NormalOrderStatistics.InterquartileRange(q.Side * q.Side))];
     }
 
     /// <summary>For all pixels of a frame, smallest window first.</summary>
@@ -29,6 +30,9 @@ internal sealed class QuartileKernels
 
     /// <summary>For some pixels, smallest window first; n = k * k makes the quartiles ranks.</summary>
     public IReadOnlyList<WindowRanks> Ranks { get; }
+
+    /// <summary>c(n) of full windows: the expected IQR of unit normal noise.</summary>
+    public IReadOnlyList<double> FullRanges { get; }
 
     /// <summary>The smallest windows, which nearly every pixel needs.</summary>
     public int Shared => Math.Min(2, Quantiles.Count);
@@ -82,6 +86,9 @@ internal sealed class QuartileWindows<T>
 
     /// <summary>Samples of a full window.</summary>
     public int FullCount(int window) => kernels.Quantiles[window].Side * kernels.Quantiles[window].Side;
+
+    /// <summary>Expected IQR of unit normal noise in a full window.</summary>
+    public double FullRange(int window) => kernels.FullRanges[window];
 
     /// <summary>First column of the block.</summary>
     public int X => shared[0].X;

@@ -33,14 +33,12 @@ internal sealed class GridGather<T, TForm, TLanes>(LevelFrame<T> frame, Plane<fl
     [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     public void Tile(int tileX, int tileY, int[] loners)
     {
-        int crowd = crowds.First(tileX, tileY);
-        if (crowd < 0)
+        CrowdTile tile = new(grid, crowds, slots, weights, tileX, tileY);
+        if (tile.IsEmpty)
             return;
-        int slot = slots.SixteenFrom(ref crowd);
-        uint room = slot < 0 ? 0 : (uint)weights.Room + 1;
-        int left = tileX * grid.Pitch, top = tileY * grid.Pitch;
-        int columns = Math.Min(grid.Pitch, grid.Width - left), rows = Math.Min(grid.Pitch, grid.Height - top);
-        double origin = slot < 0 ? 0 : slots.Value(slot);
+        int crowd = tile.Crowd, slot = tile.Slot, columns = tile.Columns, rows = tile.Rows;
+        uint room = tile.Room;
+        double origin = tile.Origin;
         int alone = 0;
         LevelWeights.LevelTable table = weights.Table;
 
@@ -51,7 +49,7 @@ internal sealed class GridGather<T, TForm, TLanes>(LevelFrame<T> frame, Plane<fl
 
         for (int y = 0; y < rows; y++)
         {
-            int start = ((top + y) * grid.Width) + left;
+            int start = ((tile.Top + y) * grid.Width) + tile.Left;
             ref int samples = ref Unsafe.Add(ref MemoryMarshal.GetArrayDataReference(guide.Samples.Buffer), start);
             ref T v = ref Unsafe.Add(ref MemoryMarshal.GetArrayDataReference(values.Buffer), start);
             ref float sum = ref Unsafe.Add(ref MemoryMarshal.GetArrayDataReference(sums.Buffer), start);

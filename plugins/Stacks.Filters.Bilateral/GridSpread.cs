@@ -34,25 +34,23 @@ internal sealed class GridSpread<T, TForm, TLanes>(LevelFrame<T> frame, Plane<fl
     [MethodImpl(MethodImplOptions.AggressiveOptimization)]
     public void Tile(int tileX, int tileY, int[] loners)
     {
-        int crowd = crowds.First(tileX, tileY);
-        if (crowd < 0)
+        CrowdTile tile = new(grid, crowds, slots, weights, tileX, tileY);
+        if (tile.IsEmpty)
             return;
-        int slot = slots.SixteenFrom(ref crowd);
-        uint room = slot < 0 ? 0 : (uint)weights.Room + 1;
-        int left = tileX * grid.Pitch, top = tileY * grid.Pitch;
-        int columns = Math.Min(grid.Pitch, grid.Width - left), rows = Math.Min(grid.Pitch, grid.Height - top);
-        double origin = slot < 0 ? 0 : slots.Value(slot);
+        int crowd = tile.Crowd, slot = tile.Slot, columns = tile.Columns, rows = tile.Rows;
+        uint room = tile.Room;
+        double origin = tile.Origin;
         int alone = 0;
         LevelWeights.LevelTable table = weights.Table;
 
-        Span<float> tile = stackalloc float[Support * Support * 2 * Lanes];
-        tile.Clear();
+        Span<float> sums = stackalloc float[Support * Support * 2 * Lanes];
+        sums.Clear();
         TLanes offsets = TForm.Values && slot >= 0 ? slots.Sixteen<TLanes>(slot, origin) : TLanes.All(0);
         ref float spline = ref MemoryMarshal.GetArrayDataReference(grid.Spline);
 
         for (int y = 0; y < rows; y++)
         {
-            int start = ((top + y) * grid.Width) + left;
+            int start = ((tile.Top + y) * grid.Width) + tile.Left;
             ref int samples = ref Unsafe.Add(ref MemoryMarshal.GetArrayDataReference(guide.Samples.Buffer), start);
             ref T v = ref Unsafe.Add(ref MemoryMarshal.GetArrayDataReference(values.Buffer), start);
             ref float c = ref TForm.Factors ? ref factors.Buffer[start] : ref spline;
@@ -87,7 +85,7 @@ internal sealed class GridSpread<T, TForm, TLanes>(LevelFrame<T> frame, Plane<fl
                 }
             }
 
-            ref float to = ref tile[0];
+            ref float to = ref sums[0];
             for (int j = 0; j < Support; j++)
             {
                 TLanes b = TLanes.All(Unsafe.Add(ref spline, (Support * y) + j));
@@ -113,11 +111,11 @@ internal sealed class GridSpread<T, TForm, TLanes>(LevelFrame<T> frame, Plane<fl
             for (int i = 0; i < Support * Support; i++)
             {
                 nint at = nodes.Start(tileX + (i % Support), tileY + (i / Support)) + slot;
-                TLanes.MultiplyAdd(TLanes.Load(ref tile[0], i * 2 * Lanes), one, TLanes.Load(ref node, at)).Store(ref node, at);
+                TLanes.MultiplyAdd(TLanes.Load(ref sums[0], i * 2 * Lanes), one, TLanes.Load(ref node, at)).Store(ref node, at);
                 if (TForm.Values)
                 {
                     at += nodes.Slots;
-                    TLanes.MultiplyAdd(TLanes.Load(ref tile[0], (i * 2 * Lanes) + Lanes), one, TLanes.Load(ref node, at)).Store(ref node, at);
+                    TLanes.MultiplyAdd(TLanes.Load(ref sums[0], (i * 2 * Lanes) + Lanes), one, TLanes.Load(ref node, at)).Store(ref node, at);
                 }
             }
         }

@@ -22,7 +22,7 @@ internal readonly struct AlignedRows
     public unsafe AlignedRows(int width, int count, IScratch scratch)
     {
         this.width = width;
-        buffer = scratch.Rent<double>((width * count) + Line, 1).Buffer;
+        buffer = scratch.Rent<double>(checked((width * count) + Line), 1).Buffer;
         start = (int)(-(nint)Unsafe.AsPointer(ref buffer[0]) & 63) / sizeof(double);
     }
 

@@ -1,5 +1,4 @@
 using System.Numerics;
-using System.Runtime.CompilerServices;
 using System.Runtime.InteropServices;
 using System.Runtime.Intrinsics;
 using Stacks.Abstractions;
@@ -13,7 +12,7 @@ namespace Stacks.Imaging;
 internal sealed class HoleCounts
 {
     private readonly int block, side;
-    private readonly byte[] columns, holes;
+    private readonly byte[] columns, holes, none;
     private readonly ushort[] counts;
     private int next;
 
@@ -24,20 +23,23 @@ internal sealed class HoleCounts
         this.block = block;
         this.side = side;
         columns = scratch.Rent<byte>(ColumnCount(block, side), 1).Buffer;
+        none = scratch.Rent<byte>(ColumnCount(block, side), 1).Buffer;
         holes = scratch.Rent<byte>(2 * RowLength(block), 1).Buffer;
         counts = scratch.Rent<ushort>(2 * RowLength(block), 1).Buffer;
     }
 
     /// <summary>Bytes rented.</summary>
-    public static long ScratchBytes(int block, int side) => ColumnCount(block, side) + (6L * RowLength(block));
+    public static long ScratchBytes(int block, int side) => (2 * ColumnCount(block, side)) + (6L * RowLength(block));
 
     /// <summary>Begins above row <paramref name="y"/>, at block column <paramref name="x"/>.</summary>
     public void Start<T>(ReflectedRows<T> rows, int x, int y)
         where T : unmanaged, INumber<T>
     {
         columns.AsSpan(0, ColumnCount(block, side)).Clear();
-        for (int row = y - (side / 2); row < y + (side / 2); row++)
-            Add(rows.Outsiders(row), x + rows.Radius - (side / 2));
+        none.AsSpan(0, ColumnCount(block, side)).Clear();
+        int left = x + rows.Radius - (side / 2);
+        for (int row = y - (side / 2) - 1; row < y + (side / 2); row++)
+            Slide(Part(rows.Outsiders(row), left), none);
         next = y;
     }
 
@@ -51,9 +53,8 @@ internal sealed class HoleCounts
         bool any = false;
         for (int row = 0; row < 2; row++, next++)
         {
-            Add(rows.Outsiders(next + (side / 2)), left);
+            Slide(Part(rows.Outsiders(next + (side / 2)), left), Part(rows.Outsiders(next - (side / 2) - 1), left));
             any |= Sum(holes.AsSpan(row * RowLength(block), RowLength(block)));
-            Subtract(rows.Outsiders(next - (side / 2)), left);
         }
 
         Span<ushort> all = counts.AsSpan(0, 2 * RowLength(block));
@@ -93,26 +94,22 @@ internal sealed class HoleCounts
 
     private static int ColumnCount(int block, int side) => RowLength(block) + side - 1;
 
-    private void Add(ReadOnlySpan<byte> outsiders, int left)
-    {
-        ReadOnlySpan<byte> row = outsiders[left..Math.Min(left + ColumnCount(block, side), outsiders.Length)];
-        ref byte from = ref MemoryMarshal.GetReference(row), to = ref columns[0];
-        int i = 0;
-        for (; i <= row.Length - Vector512<byte>.Count; i += Vector512<byte>.Count)
-            (Vector512.LoadUnsafe(ref to, (nuint)i) + Vector512.LoadUnsafe(ref from, (nuint)i)).StoreUnsafe(ref to, (nuint)i);
-        for (; i < row.Length; i++)
-            Unsafe.Add(ref to, i) += row[i];
-    }
+    private ReadOnlySpan<byte> Part(ReadOnlySpan<byte> outsiders, int left) =>
+        outsiders[left..Math.Min(left + ColumnCount(block, side), outsiders.Length)];
 
-    private void Subtract(ReadOnlySpan<byte> outsiders, int left)
+    /// <summary>Columns with a row that enters and without one that leaves.</summary>
+    private void Slide(ReadOnlySpan<byte> entering, ReadOnlySpan<byte> leaving)
     {
-        ReadOnlySpan<byte> row = outsiders[left..Math.Min(left + ColumnCount(block, side), outsiders.Length)];
-        ref byte from = ref MemoryMarshal.GetReference(row), to = ref columns[0];
+        ref byte plus = ref MemoryMarshal.GetReference(entering), minus = ref MemoryMarshal.GetReference(leaving), to = ref columns[0];
         int i = 0;
-        for (; i <= row.Length - Vector512<byte>.Count; i += Vector512<byte>.Count)
-            (Vector512.LoadUnsafe(ref to, (nuint)i) - Vector512.LoadUnsafe(ref from, (nuint)i)).StoreUnsafe(ref to, (nuint)i);
-        for (; i < row.Length; i++)
-            Unsafe.Add(ref to, i) -= row[i];
+        for (; i <= entering.Length - Vector512<byte>.Count; i += Vector512<byte>.Count)
+        {
+            nuint at = (nuint)i;
+            (Vector512.LoadUnsafe(ref to, at) + Vector512.LoadUnsafe(ref plus, at) - Vector512.LoadUnsafe(ref minus, at)).StoreUnsafe(ref to, at);
+        }
+
+        for (; i < entering.Length; i++)
+            columns[i] += (byte)(entering[i] - leaving[i]);
     }
 
     private bool Sum(Span<byte> into)

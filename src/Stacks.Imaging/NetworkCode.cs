@@ -45,10 +45,17 @@ internal sealed class NetworkCode(MinMaxNetwork network, int pointerCount)
             || (form == NetworkForm.Adaptive && Interlocked.Add(ref interpreted, vectors * size) >= CompileAfter));
         return new NetworkRun<T>(
             interpreter,
-            compile ? compiled.GetOrAdd((typeof(T), width, pitch), _ => NetworkCompiler.Compile<T>(network, pointerCount, pitch, width)) : null,
+            compile ? Compiled<T>(pitch, width) : null,
             pitch,
             width);
     }
+
+    private CompiledNetwork Compiled<T>(int pitch, LaneWidth width)
+        where T : unmanaged =>
+        compiled.TryGetValue((typeof(T), width, pitch), out CompiledNetwork? code) ? code : Compile<T>(pitch, width);
+
+    private CompiledNetwork Compile<T>(int pitch, LaneWidth width)
+        where T : unmanaged => compiled.GetOrAdd((typeof(T), width, pitch), NetworkCompiler.Compile<T>(network, pointerCount, pitch, width));
 }
 
 /// <summary>A network ready to run.</summary>

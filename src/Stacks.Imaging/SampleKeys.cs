@@ -3,10 +3,10 @@ using System.Runtime.CompilerServices;
 
 namespace Stacks.Imaging;
 
-/// <summary>Unsigned integers in the order of samples; no NaN and no negative zero.</summary>
-internal static class SampleKeys
+/// <summary>Unsigned integers in the order of samples, which are neither NaN nor negative zeros.</summary>
+public static class SampleKeys
 {
-    /// <summary>The key of a sample.</summary>
+    /// <summary>The key of a sample: as many bits as the sample has.</summary>
     [MethodImpl(MethodImplOptions.AggressiveInlining)]
     public static ulong Of<T>(T sample)
         where T : unmanaged, INumber<T>

@@ -10,7 +10,7 @@ namespace Stacks.Imaging;
 public sealed class WindowQuantiles
 {
     /// <summary>Side of the largest window that networks are faster for.</summary>
-    private const int LargestNetwork = 9;
+    internal const int LargestNetwork = 9;
 
     private readonly double[] probabilities;
 

@@ -3,6 +3,7 @@ using System.Runtime.CompilerServices;
 using System.Runtime.InteropServices;
 using System.Runtime.Intrinsics;
 using Stacks.Abstractions;
+using Stacks.Imaging;
 
 namespace Stacks.Noise;
 
@@ -89,7 +90,7 @@ public static class RankSelection
                 below += table[digit++];
             prefix |= (ulong)digit << shift;
             if (shift == 0)
-                return new RankedSample<T>(Value<T>(prefix), below, table[digit]);
+                return new RankedSample<T>(SampleKeys.ToSample<T>(prefix), below, table[digit]);
         }
     }
 
@@ -198,7 +199,7 @@ public static class RankSelection
 
         void CountDigit(T sample, Span<int> table)
         {
-            ulong key = Key(sample);
+            ulong key = SampleKeys.Of(sample + T.Zero); // both zeros have one key
             if ((key & known) == prefix)
                 table[(ushort)(key >> shift)]++;
         }
@@ -223,42 +224,6 @@ public static class RankSelection
         for (; i < bytes.Length; i++)
             valid += (bytes[i] & (byte)without) == 0 ? 1 : 0;
         return valid;
-    }
-
-    /// <summary>An unsigned number that orders as the sample does; both zeros have one key.</summary>
-    [MethodImpl(MethodImplOptions.AggressiveInlining)]
-    private static ulong Key<T>(T sample)
-        where T : unmanaged, INumber<T>
-    {
-        if (typeof(T) == typeof(ushort))
-            return Unsafe.BitCast<T, ushort>(sample);
-        if (typeof(T) == typeof(short))
-            return (ushort)(Unsafe.BitCast<T, short>(sample) ^ short.MinValue);
-        if (typeof(T) == typeof(float))
-        {
-            int whole = Unsafe.BitCast<T, int>(sample + T.Zero);
-            return (uint)(whole ^ ((whole >> 31) | int.MinValue));
-        }
-
-        long wide = Unsafe.BitCast<T, long>(sample + T.Zero);
-        return (ulong)(wide ^ ((wide >> 63) | long.MinValue));
-    }
-
-    private static T Value<T>(ulong key)
-        where T : unmanaged, INumber<T>
-    {
-        if (typeof(T) == typeof(ushort))
-            return Unsafe.BitCast<ushort, T>((ushort)key);
-        if (typeof(T) == typeof(short))
-            return Unsafe.BitCast<short, T>((short)((ushort)key ^ 0x8000));
-        if (typeof(T) == typeof(float))
-        {
-            int whole = (int)(uint)key;
-            return Unsafe.BitCast<int, T>(whole < 0 ? whole ^ int.MinValue : ~whole);
-        }
-
-        long wide = (long)key;
-        return Unsafe.BitCast<long, T>(wide < 0 ? wide ^ long.MinValue : ~wide);
     }
 }
 

@@ -20,6 +20,24 @@ public static class FilterRun
         return plane;
     }
 
+    /// <summary>Draws shares of missing and saturated samples; missing ones become NaN.</summary>
+    public static Plane<SampleFlags> Strike(Plane<double> plane, Random random, double missing, double saturated)
+    {
+        Plane<SampleFlags> flags = PlaneOf(plane.Width, plane.Height, (_, _) => random.NextDouble() switch
+        {
+            double r when r < missing => SampleFlags.Missing,
+            double r when r < missing + saturated => SampleFlags.Saturated,
+            _ => SampleFlags.None,
+        });
+        for (int i = 0; i < plane.Length; i++)
+        {
+            if (flags.Samples[i] == SampleFlags.Missing)
+                plane.Samples[i] = double.NaN;
+        }
+
+        return flags;
+    }
+
     /// <summary>The layout of a plane of <typeparamref name="T"/>.</summary>
     public static FrameLayout LayoutOf<T>(Plane<T> plane)
         where T : unmanaged => new()

@@ -36,26 +36,6 @@ internal static class FlagScan
             counts = counts.Add(bytes[i]);
         return counts;
     }
-
-    /// <summary>True when any sample has a flag.</summary>
-    public static bool Any(ReadOnlySpan<SampleFlags> flags, SampleFlags flag) => NextOf(flags, 0, flag) >= 0;
-
-    /// <summary>Index of the first sample from <paramref name="start"/> on that has a flag; -1 when there is none.</summary>
-    [MethodImpl(MethodImplOptions.AggressiveOptimization)]
-    private static int NextOf(ReadOnlySpan<SampleFlags> flags, int start, SampleFlags flag)
-    {
-        ReadOnlySpan<byte> bytes = MemoryMarshal.AsBytes(flags);
-        Vector<byte> wanted = new((byte)flag);
-        while (start <= bytes.Length - Vector<byte>.Count && (new Vector<byte>(bytes[start..]) & wanted) == Vector<byte>.Zero)
-            start += Vector<byte>.Count;
-        for (; start < bytes.Length; start++)
-        {
-            if ((bytes[start] & (byte)flag) != 0)
-                return start;
-        }
-
-        return -1;
-    }
 }
 
 /// <summary>Samples that have a flag, for every flag.</summary>

@@ -3,6 +3,7 @@ using System.Runtime.ExceptionServices;
 using System.Runtime.InteropServices;
 using System.Security.Cryptography;
 using Stacks.Abstractions;
+using Stacks.Imaging;
 using Stacks.Noise;
 
 namespace Stacks.Pipeline;
@@ -150,8 +151,8 @@ internal sealed class FrameProcessor(
             {
                 FrameIndex = slot.Frame,
                 Noise = noise,
-                HasMissing = FlagScan.Any(planes.Flags.Samples, SampleFlags.Missing),
-                HasSaturated = FlagScan.Any(planes.Flags.Samples, SampleFlags.Saturated),
+                HasMissing = FlagSearch.Any(planes.Flags.Samples, SampleFlags.Missing),
+                HasSaturated = FlagSearch.Any(planes.Flags.Samples, SampleFlags.Saturated),
                 Bands = bands,
                 Scratch = slot.Scratch,
                 Report = (name, value) => (slot.Figures ??= []).Add(new StepFigure(step.Number, name, value)),

@@ -2,6 +2,7 @@ using System.Numerics;
 using System.Runtime.CompilerServices;
 using System.Runtime.InteropServices;
 using Stacks.Abstractions;
+using Stacks.Imaging;
 
 namespace Stacks.Pipeline;
 
@@ -119,7 +120,7 @@ internal sealed class StoredSamples<TStored> : StoredSamples
             ReadOnlySpan<TStored> row = samples.Slice(start, width);
             ReadOnlySpan<SampleFlags> rowFlags = flags.Slice(start, width);
             sum = typeof(TStored) == typeof(long) || typeof(TStored) == typeof(ulong) ? sum.Add(SumRow<Int128>(row, rowFlags, out int count), 0, count)
-                : typeof(TStored) == typeof(ushort) && !FlagScan.Any(rowFlags, SampleFlags.Missing) ? sum.Add(SumWhole(MemoryMarshal.Cast<TStored, ushort>(row)), 0, width)
+                : typeof(TStored) == typeof(ushort) && !FlagSearch.Any(rowFlags, SampleFlags.Missing) ? sum.Add(SumWhole(MemoryMarshal.Cast<TStored, ushort>(row)), 0, width)
                 : IsInteger ? sum.Add(SumRow<long>(row, rowFlags, out count), 0, count)
                 : sum.Add(0, SumRow<double>(row, rowFlags, out count), count);
         }

@@ -28,17 +28,7 @@ internal sealed class FastScene
             }
         }
 
-        Flags = FilterRun.PlaneOf(width, height, (_, _) => random.NextDouble() switch
-        {
-            double u when u < missing => SampleFlags.Missing,
-            double u when u < missing + saturated => SampleFlags.Saturated,
-            _ => SampleFlags.None,
-        });
-        for (int i = 0; i < Plane.Length; i++)
-        {
-            if (Flags.Samples[i] == SampleFlags.Missing)
-                Plane.Samples[i] = double.NaN;
-        }
+        Flags = FilterRun.Strike(Plane, random, missing, saturated);
     }
 
     public Plane<double> Plane { get; }

@@ -10,17 +10,7 @@ internal sealed class SmoothingScene
     {
         Random random = new(seed);
         Plane = FilterRun.PlaneOf(width, height, (_, _) => 50 + (200 * random.NextDouble()));
-        Flags = FilterRun.PlaneOf(width, height, (_, _) => random.NextDouble() switch
-        {
-            double r when r < missing => SampleFlags.Missing,
-            double r when r < missing + saturated => SampleFlags.Saturated,
-            _ => SampleFlags.None,
-        });
-        for (int i = 0; i < Plane.Length; i++)
-        {
-            if (Flags.Samples[i] == SampleFlags.Missing)
-                Plane.Samples[i] = double.NaN;
-        }
+        Flags = FilterRun.Strike(Plane, random, missing, saturated);
     }
 
     public Plane<double> Plane { get; }

@@ -22,7 +22,7 @@ internal sealed record WindowResults<T>(string Form, T[][] Values, int[] Counts)
     public static IEnumerable<WindowResults<T>> AllForms(WindowQuantiles quantiles, ReflectedRows<T> rows)
     {
         // Windows beyond the networks have one kernel.
-        foreach ((LaneWidth width, NetworkForm form) in quantiles.Side > 9 ? Variants.Take(1) : Variants)
+        foreach ((LaneWidth width, NetworkForm form) in quantiles.Side > WindowQuantiles.LargestNetwork ? Variants.Take(1) : Variants)
             yield return Of(quantiles, rows, width, form, rows.Height);
     }
 
